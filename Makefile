@@ -1,0 +1,42 @@
+# Everything runs in a virtual environment of the project's own, made on first use.
+PYTHON ?= python3
+VENV := .venv
+BIN := $(VENV)/bin
+JOBS ?= 2
+
+.DEFAULT_GOAL := help
+.PHONY: help demo test lint campaign coverage accept-examples clean
+
+help: ## Show this list.
+	@grep -hE '^[a-z-]+:.*##' $(MAKEFILE_LIST) | sed 's/:.*##/:/' | awk -F': ' '{ printf "  make %-16s %s\n", $$1, $$2 }'
+
+$(BIN)/ready: pyproject.toml
+	$(PYTHON) -m venv $(VENV)
+	$(BIN)/python -m pip install --quiet --upgrade pip
+	$(BIN)/python -m pip install --quiet --editable '.[dev]'
+	touch $@
+
+demo: $(BIN)/ready ## Size, emit and verify every example; filter a photograph with the compiled C.
+	$(BIN)/python examples/demo.py
+
+test: $(BIN)/ready ## Run the test suite (under ten minutes on two cores).
+	$(BIN)/python -m pytest -n $(JOBS) tests
+
+lint: $(BIN)/ready ## Check style, formatting and types; changes nothing.
+	$(BIN)/ruff check
+	$(BIN)/ruff format --check
+	$(BIN)/mypy
+
+campaign: $(BIN)/ready ## Compare C, reference, oracle and SciPy on thousands of random specs.
+	$(BIN)/python -m tests.campaign $(CAMPAIGN)
+
+coverage: $(BIN)/ready ## Measure line and branch coverage of the package by the test suite.
+	$(BIN)/python -m coverage run -m pytest tests
+	$(BIN)/python -m coverage combine --quiet
+	$(BIN)/python -m coverage report
+
+accept-examples: $(BIN)/ready ## Write the C of the examples again, after a change that is meant.
+	$(BIN)/guardbit emit examples/*.toml -o examples/c --force
+
+clean: ## Remove the virtual environment and everything that was made here.
+	rm -rf $(VENV) demo build dist gen/*.egg-info .pytest_cache .mypy_cache .ruff_cache .hypothesis

@@ -1,0 +1,170 @@
+"""The arithmetic contract of one filter with nothing left open: what every later stage reads.
+
+Offsets `(dy, dx)` say where a tap reads: the pixel at the output position plus the offset.
+For convolution that is minus the tap's displacement, for correlation plus its scaled index.
+"""
+
+from dataclasses import dataclass
+from fractions import Fraction
+
+from guardbit.model.enums import (
+    BorderMode,
+    Container,
+    Extent,
+    FitRule,
+    Grid,
+    Operation,
+    Outside,
+    Overflow,
+    Preload,
+    Rounding,
+    Scale,
+)
+
+
+@dataclass(frozen=True)
+class PixelFormat:
+    """How a pixel is stored. Its real value is (code - pedestal) * 2**-frac.
+
+    `low`..`high` are the legal codes: the range, or all codes of the format.
+    """
+
+    bits: int
+    signed: bool
+    frac: int
+    pedestal: int
+    low: int
+    high: int
+    container: Container
+
+
+@dataclass(frozen=True)
+class Term:
+    """One tap: the offset it reads, its ideal value and the integer that stands for it."""
+
+    dy: int
+    dx: int
+    ideal: Fraction
+    integer: int
+
+
+@dataclass(frozen=True)
+class Kernel:
+    """The fitted taps of one pass, in the contract's order of accumulation.
+
+    The order is raster order of the offset: smaller dy first, then smaller dx. Taps whose
+    ideal and integer are both zero are left out; a tap fitted to zero is kept for the error
+    analysis (it adds nothing to an accumulator).
+
+    With `scale` binary, integer stands for ideal * 2**frac and `divisor` is 1. With exact,
+    integer / divisor equals ideal, and `frac` is 0. `bits` and `signed` are the coefficient
+    register's. `rule` is how the integers were found (None: pinned in the spec), and
+    `residual` is sum(integer) - 2**frac * divisor * sum(ideal).
+    """
+
+    terms: tuple[Term, ...]
+    scale: Scale
+    frac: int
+    divisor: int
+    bits: int
+    signed: bool
+    rule: FitRule | None
+    residual: Fraction
+
+
+@dataclass(frozen=True)
+class Accumulator:
+    """The register that sums coefficient * (code - pedestal).
+
+    `bits` is None between fitting and sizing when the spec says "auto".
+    """
+
+    bits: int | None
+    signed: bool
+    overflow: Overflow
+    preload: Preload
+
+
+@dataclass(frozen=True)
+class Requantiser:
+    """value = acc * 2**exponent / divisor, rounded, plus the pedestal of `to`, then overflow.
+
+    For a binary scale divisor is 1 and exponent is minus the contract's shift s.
+    """
+
+    exponent: int
+    divisor: int
+    rounding: Rounding
+    overflow: Overflow
+    to: PixelFormat
+
+
+@dataclass(frozen=True)
+class Pass:
+    """One convolution: pixels of `source`, summed in `accumulator`, then requantised."""
+
+    source: PixelFormat
+    kernel: Kernel
+    accumulator: Accumulator
+    requantiser: Requantiser
+
+
+@dataclass(frozen=True)
+class Border:
+    """`value` is the code that reads outside the image return when `mode` is constant."""
+
+    mode: BorderMode
+    value: int
+    grid: Grid
+
+
+@dataclass(frozen=True)
+class Axis:
+    """One direction of the geometry.
+
+    `least`, `greatest`: ends of the box's displacements, zero taps included. `sizes`: the
+    legal image lengths. Positions kept are number phase, phase + step, ... of the extent.
+    """
+
+    least: int
+    greatest: int
+    sizes: tuple[int, int]
+    step: int
+    phase: int
+    spacing: int
+
+
+@dataclass(frozen=True)
+class Geometry:
+    extent: Extent
+    rows: Axis
+    columns: Axis
+    channels: int
+
+
+@dataclass(frozen=True)
+class Filter:
+    """The whole contract. One pass, or two with an intermediate between them.
+
+    With two passes `passes[0]` runs first on the input extended by the border; the terms of
+    one have dx == 0 and of the other dy == 0.
+    """
+
+    name: str
+    summary: str
+    operation: Operation
+    outside: Outside
+    passes: tuple[Pass, ...]
+    border: Border
+    geometry: Geometry
+    spec_digest: str
+
+    @property
+    def input(self) -> PixelFormat:
+        """Return the format of the source."""
+        return self.passes[0].source
+
+    @property
+    def output(self) -> PixelFormat:
+        """Return the format of the result."""
+        return self.passes[-1].requantiser.to

@@ -1,0 +1,132 @@
+"""What exact range analysis found: intervals, the bits they need, and frames that attain them."""
+
+from dataclasses import dataclass
+from enum import StrEnum
+from fractions import Fraction
+
+from guardbit.model.filter import Filter
+
+
+@dataclass(frozen=True)
+class Interval:
+    """The integers low..high, both included."""
+
+    low: int
+    high: int
+
+
+class End(StrEnum):
+    LEAST = "least"
+    GREATEST = "greatest"
+
+
+@dataclass(frozen=True)
+class Witness:
+    """A frame that attains one end of one register.
+
+    The frame is height x width pixels of code `fill`, except `pixels` = (row, column, code);
+    every channel is alike. At output position `position` (row, column, in image coordinates)
+    the register named reaches `value` after adding `after` taps (all taps: the final value).
+    """
+
+    register: str
+    end: End
+    partial: bool
+    height: int
+    width: int
+    fill: int
+    pixels: tuple[tuple[int, int, int], ...]
+    position: tuple[int, int]
+    after: int
+    value: int
+
+
+@dataclass(frozen=True)
+class ClassRange:
+    """Ranges at output positions of one border class, as (vertical, horizontal) labels."""
+
+    label: tuple[str, str]
+    final: Interval
+    partial: Interval
+
+
+@dataclass(frozen=True)
+class RegisterSizing:
+    """One accumulator.
+
+    `final` and `partial` are ranges of the unlimited sum (partial: of every partial sum in
+    the contract's order, start value included). `held` is what the register, with its
+    width and policy, can hold at the end. `exact` says that each end is attained by a legal
+    frame; otherwise they are bounds. `bits_forbid` is the least width no partial sum leaves,
+    `bits_wrap` the least width that holds every final value. `headroom` is the ratio of the
+    width's limit to the worst case, the lesser of both ends. An unsigned register holds no
+    negative sum at any width: then these widths are a signed one's. `held_exact` says that
+    both ends of `held` are attained.
+    """
+
+    name: str
+    bits: int
+    signed: bool
+    final: Interval
+    partial: Interval
+    held: Interval
+    exact: bool
+    bits_forbid: int
+    bits_wrap: int
+    spare: int
+    headroom: Fraction | None
+    rule_l1: int
+    rule_count: int
+    classes: tuple[ClassRange, ...]
+    witnesses: tuple[Witness, ...]
+    held_exact: bool = True
+
+
+@dataclass(frozen=True)
+class RequantiserSizing:
+    """One requantiser: its input, the widest value inside, and what leaves it.
+
+    `unlimited` is the rounded value with the pedestal added, before overflow; `bits` holds
+    every value inside (the scaled sum, with its rounding constant, and `unlimited`).
+    """
+
+    name: str
+    argument: Interval
+    unlimited: Interval
+    output: Interval
+    bits: int
+    can_overflow: bool
+
+
+@dataclass(frozen=True)
+class ErrorPart:
+    """The exact interval of one cause of error, in LSB of the output code."""
+
+    cause: str
+    low: Fraction
+    high: Fraction
+
+
+@dataclass(frozen=True)
+class ErrorBound:
+    """Output code minus clamped ideal code, in LSB, for every legal input.
+
+    When `assumes_no_wrap`, low..high is for inputs with which no accumulator wraps or
+    saturates and no requantiser wraps, and `overall` (low, high) for all legal inputs.
+    """
+
+    low: Fraction
+    high: Fraction
+    parts: tuple[ErrorPart, ...]
+    assumes_no_wrap: bool
+    overall: tuple[Fraction, Fraction] | None = None
+
+
+@dataclass(frozen=True)
+class Sizing:
+    """The filter with every width resolved, and the evidence for each of them."""
+
+    filter: Filter
+    registers: tuple[RegisterSizing, ...]
+    requantisers: tuple[RequantiserSizing, ...]
+    error: ErrorBound

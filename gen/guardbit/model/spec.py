@@ -1,0 +1,167 @@
+"""A spec file as written: exact rationals, defaults that are constants, nothing derived.
+
+`None` stands for a key that was left out and whose default depends on other keys (the input's
+word length, the whole range of a format, the centre of the kernel); "auto" is spelt `Auto.AUTO`.
+The stage that resolves them is `fit`.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from enum import StrEnum
+from fractions import Fraction
+from typing import TypeAlias
+
+from guardbit.model.enums import (
+    BorderMode,
+    Container,
+    Extent,
+    First,
+    FitRule,
+    Grid,
+    Operation,
+    Outside,
+    Overflow,
+    Preload,
+    Rounding,
+    Scale,
+)
+
+Matrix: TypeAlias = tuple[tuple[Fraction, ...], ...]
+Vector: TypeAlias = tuple[Fraction, ...]
+
+
+class Auto(StrEnum):
+    AUTO = "auto"
+
+
+class Sum(StrEnum):
+    """`divisor = "sum"`: divide by the sum of the taps."""
+
+    SUM = "sum"
+
+
+@dataclass(frozen=True)
+class FilterTable:
+    name: str
+    operation: Operation
+    summary: str
+
+
+@dataclass(frozen=True)
+class KernelTable:
+    """The ideal kernel before division.
+
+    Exactly one of `taps` and the pair `column`, `row` is set, whatever the file said:
+    images, tables and formulas have been evaluated to exact rationals. `source` keeps what
+    the file said ("taps", "column and row", "file psf.npy", "formula gaussian").
+    A scalar `divisor` is one entry; a pair [column's, row's] is two.
+    """
+
+    taps: Matrix | None
+    column: Vector | None
+    row: Vector | None
+    divisor: tuple[Fraction | Sum, ...]
+    origin: tuple[int, int] | None
+    source: str
+
+
+@dataclass(frozen=True)
+class InputTable:
+    bits: int
+    signed: bool
+    frac: int
+    pedestal: int
+    range: tuple[int, int] | None
+    container: Container | None
+    outside: Outside
+
+
+@dataclass(frozen=True)
+class Pinned:
+    """Integer taps written into the spec by a search: a matrix, or column and row vectors."""
+
+    taps: tuple[tuple[int, ...], ...] | None
+    column: tuple[int, ...] | None
+    row: tuple[int, ...] | None
+
+
+@dataclass(frozen=True)
+class CoefficientTable:
+    """`frac` has one entry, or two for a pair [column's, row's]."""
+
+    bits: int | Auto
+    signed: bool
+    frac: tuple[int | Auto, ...]
+    fit: FitRule
+    scale: Scale
+    pinned: Pinned | None
+
+
+@dataclass(frozen=True)
+class AccumulatorTable:
+    bits: int | Auto
+    signed: bool
+    overflow: Overflow
+    preload: Preload
+
+
+@dataclass(frozen=True)
+class IntermediateTable:
+    first: First
+    bits: int
+    signed: bool
+    frac: int | None
+    pedestal: int
+    rounding: Rounding
+    overflow: Overflow
+    accumulator: AccumulatorTable
+
+
+@dataclass(frozen=True)
+class OutputTable:
+    bits: int | None
+    signed: bool | None
+    frac: int | None
+    pedestal: int
+    range: tuple[int, int] | None
+    container: Container | None
+    rounding: Rounding
+    overflow: Overflow
+
+
+@dataclass(frozen=True)
+class BorderTable:
+    mode: BorderMode
+    value: int | None
+    grid: Grid
+
+
+@dataclass(frozen=True)
+class ImageTable:
+    """Pairs are (vertical, horizontal); `width` and `height` are (least, greatest)."""
+
+    extent: Extent
+    width: tuple[int, int]
+    height: tuple[int, int]
+    step: tuple[int, int]
+    phase: tuple[int, int]
+    spacing: tuple[int, int]
+    channels: int
+
+
+@dataclass(frozen=True)
+class Spec:
+    """One spec file. `lines` maps a dotted key ("kernel.taps") to its line, from 1."""
+
+    path: str
+    digest: str
+    lines: Mapping[str, int]
+    filter: FilterTable
+    kernel: KernelTable
+    input: InputTable
+    coefficient: CoefficientTable
+    intermediate: IntermediateTable | None
+    accumulator: AccumulatorTable
+    output: OutputTable
+    border: BorderTable
+    image: ImageTable
