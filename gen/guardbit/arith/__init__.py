@@ -1,0 +1,1 @@
+"""Exact scalar arithmetic of the contract: rounding, overflow, intervals, borders."""

@@ -1,0 +1,1 @@
+"""Tests of the exact scalar arithmetic and the border classes."""
