@@ -1,0 +1,1 @@
+"""From a spec to a filter: fitted taps, resolved formats, geometry."""

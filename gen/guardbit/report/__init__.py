@@ -1,0 +1,1 @@
+"""What a person or a machine reads: sentences, terminal text, the certificate's JSON."""

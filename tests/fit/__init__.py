@@ -1,0 +1,1 @@
+"""Tests of the fit: integers for ideal taps, and everything "auto" resolved."""
