@@ -1,0 +1,1 @@
+"""The arithmetic contract in NumPy, stated on its own from the definitions."""
