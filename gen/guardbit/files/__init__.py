@@ -1,0 +1,1 @@
+"""Safe paths, atomic writes, and the formats of images and arrays."""

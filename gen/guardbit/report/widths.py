@@ -1,0 +1,144 @@
+"""The table that `size` prints: registers, requantisers and the error bound."""
+
+from collections.abc import Callable, Sequence
+from fractions import Fraction
+
+from rich.table import Table
+from rich.text import Text
+
+from guardbit.model.filter import Pass, Requantiser
+from guardbit.model.sizing import ErrorBound, RegisterSizing, RequantiserSizing, Sizing
+from guardbit.report.heads import head, words
+from guardbit.report.look import Look, drawn
+from guardbit.report.text import interval, lower, plural, ratio, signed, upper
+
+_LABELS = 22
+_BAR = 24
+_CONDITION = "    (for inputs that make no register wrap or saturate)"
+
+
+def size_text(look: Look, sizing: Sizing) -> str:
+    """Return the text of `size` for one filter."""
+    return drawn(
+        look,
+        *head(look, sizing.filter),
+        Text(),
+        _passes(look, sizing),
+        Text(),
+        _error(look, sizing.error),
+        *([Text(_CONDITION)] if sizing.error.assumes_no_wrap else []),
+    )
+
+
+def _grid(columns: int) -> Table:
+    table = Table.grid(padding=(0, 2))
+    table.add_column(min_width=_LABELS)
+    for _ in range(columns):
+        table.add_column()
+    return table
+
+
+def _passes(look: Look, sizing: Sizing) -> Table:
+    table = _grid(len(sizing.registers))
+    table.add_row(_title("register"), *(words(look, r.name, "bold") for r in sizing.registers))
+    for label, show in _REGISTER_ROWS:
+        table.add_row(f"    {label}", *(show(look, r) for r in sizing.registers))
+    policies = [Text(_policy(each)) for each in sizing.filter.passes]
+    table.add_row("    policy", *policies)
+    table.add_row(
+        _title("requantiser"), *(words(look, r.name, "bold") for r in sizing.requantisers)
+    )
+    table.add_row("    rule", *(Text(_rule(p.requantiser)) for p in sizing.filter.passes))
+    for label, tell in _REQUANTISER_ROWS:
+        table.add_row(f"    {label}", *(tell(r) for r in sizing.requantisers))
+    return table
+
+
+def _bold(text: str) -> Text:
+    return Text.assemble((text, "bold"))
+
+
+def _title(text: str) -> Text:
+    return _bold(f"  {text}")
+
+
+def _policy(each: Pass) -> str:
+    preload = ", preload rounding" if each.accumulator.preload.value == "rounding" else ""
+    return f"{each.accumulator.overflow.value}{preload}"
+
+
+def _given(_: Look, register: RegisterSizing) -> Text:
+    return Text(f"{register.bits} bits {'signed' if register.signed else 'unsigned'}")
+
+
+def _bar(look: Look, register: RegisterSizing) -> Text:
+    """Return one mark per bit (or two, or four): needed, spare, missing."""
+    scale = next(s for s in (1, 2, 4, 8) if max(register.bits, register.bits_forbid) <= _BAR * s)
+    needed, given = -(-register.bits_forbid // scale), -(-register.bits // scale)
+    full, empty, missing = "■□▲" if look.fine else "#.!"
+    return Text.assemble(
+        (full * min(needed, given), "green" if register.spare >= 0 else "red"),
+        empty * max(0, given - needed),
+        (missing * max(0, needed - given), "bold red"),
+        f" needs {register.bits_forbid} of {register.bits}",
+    )
+
+
+def _ends(register: RegisterSizing) -> str:
+    return "" if register.exact else " (bound)"
+
+
+def _headroom(_: Look, register: RegisterSizing) -> Text:
+    if register.headroom is None:
+        return Text("unlimited: the sum is 0")
+    style = "" if register.headroom >= 1 else "bold red"
+    return Text.assemble((f"{ratio(register.headroom)} to 1", style))
+
+
+def _spare(_: Look, register: RegisterSizing) -> Text:
+    return Text.assemble((signed(str(register.spare)), "" if register.spare >= 0 else "bold red"))
+
+
+_REGISTER_ROWS: Sequence[tuple[str, Callable[[Look, RegisterSizing], Text]]] = (
+    ("given", _given),
+    ("bits used", _bar),
+    ("final sum", lambda _, r: Text(interval(r.final) + _ends(r))),
+    ("partial sums", lambda _, r: Text(interval(r.partial) + _ends(r))),
+    ("needed by forbid", lambda _, r: Text(plural(r.bits_forbid, "bit"))),
+    ("needed by wrap", lambda _, r: Text(plural(r.bits_wrap, "bit"))),
+    ("spare bits", _spare),
+    ("headroom", _headroom),
+    ("rule: sum of |h|", lambda _, r: Text(plural(r.rule_l1, "bit"))),
+    ("rule: tap count", lambda _, r: Text(plural(r.rule_count, "bit"))),
+    ("witnesses", lambda _, r: Text(plural(len(r.witnesses), "frame"))),
+)
+
+_REQUANTISER_ROWS: Sequence[tuple[str, Callable[[RequantiserSizing], Text]]] = (
+    ("input", lambda r: Text(interval(r.argument))),
+    ("rounded", lambda r: Text(interval(r.unlimited))),
+    ("output codes", lambda r: Text(interval(r.output))),
+    ("width inside", lambda r: Text(plural(r.bits, "bit"))),
+)
+
+
+def _rule(requantiser: Requantiser) -> str:
+    scale = f" * 2^{requantiser.exponent}" if requantiser.exponent else ""
+    divide = f" / {requantiser.divisor}" if requantiser.divisor != 1 else ""
+    pedestal = f" + {requantiser.to.pedestal}" if requantiser.to.pedestal > 0 else ""
+    if requantiser.to.pedestal < 0:
+        pedestal = f" - {-requantiser.to.pedestal}"
+    sum_ = f"acc{scale}{divide}{pedestal}"
+    return f"{sum_}, {requantiser.rounding.value}, {requantiser.overflow.value}"
+
+
+def _error(look: Look, error: ErrorBound) -> Table:
+    table = _grid(2)
+    table.add_row(_title("error in LSB"), _bold("least"), _bold("greatest"))
+    for part in error.parts:
+        table.add_row(Text("    ").append(words(look, part.cause)), *_pair(part.low, part.high))
+    table.add_row("    bound in all", *_pair(error.low, error.high))
+    return table
+
+
+def _pair(low: Fraction, high: Fraction) -> tuple[Text, Text]:
+    return Text(signed(lower(low))), Text(signed(upper(high)))

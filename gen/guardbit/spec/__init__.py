@@ -1,0 +1,1 @@
+"""From the text of a spec file to a Spec, or to every mistake in it."""
