@@ -1,0 +1,1 @@
+"""Plan, sizing and vectors to text, through the templates."""

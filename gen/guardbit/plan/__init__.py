@@ -1,0 +1,1 @@
+"""Plans as data, and the evaluator that derives what the C types owe them."""

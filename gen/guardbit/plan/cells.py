@@ -1,0 +1,50 @@
+"""Choice of C integers for intervals."""
+
+from collections.abc import Iterable
+
+from guardbit.arith.intervals import contains, hull
+from guardbit.arith.words import format_range
+from guardbit.model.plan import Cell
+from guardbit.model.sizing import Interval
+
+
+class TooWideError(ValueError):
+    """A number needs more than 64 bits; its one argument is the interval."""
+
+
+INT16 = Cell(16, True)
+INT32 = Cell(32, True)
+INT64 = Cell(64, True)
+UINT64 = Cell(64, False)
+
+
+def cell_range(cell: Cell) -> Interval:
+    """Return all numbers that a cell holds."""
+    return format_range(cell.bits, cell.signed)
+
+
+def fits(values: Interval, cell: Cell) -> bool:
+    """Return whether a cell holds every number of an interval."""
+    return contains(cell_range(cell), values)
+
+
+def work_cell(values: Iterable[Interval]) -> Cell:
+    """Return int32 or int64, the smaller that holds all intervals. Raises TooWideError."""
+    whole = hull(values)
+    if fits(whole, INT32):
+        return INT32
+    if fits(whole, INT64):
+        return INT64
+    raise TooWideError(whole)
+
+
+def storage_cell(values: Interval) -> Cell:
+    """Return the smallest C integer that holds an interval, unsigned if there is a choice.
+
+    Raises TooWideError.
+    """
+    for bits in (8, 16, 32, 64):
+        for signed in (False, True):
+            if fits(values, Cell(bits, signed)):
+                return Cell(bits, signed)
+    raise TooWideError(values)

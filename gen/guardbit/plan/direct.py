@@ -1,0 +1,262 @@
+"""The direct plan: padded rows in a ring, every tap multiplied where it stands.
+
+Intervals here are those of every frame that the container can hold, not only of legal ones:
+that is what keeps illegal codes from being undefined behaviour.
+"""
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, replace
+from itertools import groupby
+
+from guardbit.arith.intervals import add, contains, hull, scale, shift, wrapped
+from guardbit.arith.rounding import rounding_constant
+from guardbit.arith.words import clamp, container_range, container_word, format_range
+from guardbit.model.enums import BorderMode, Outside, Overflow, Preload
+from guardbit.model.filter import Filter, Pass
+from guardbit.model.plan import (
+    Cell,
+    Field,
+    Group,
+    Load,
+    Plan,
+    Product,
+    Read,
+    Rows,
+    SaturatingSum,
+    Step,
+    Sum,
+    Value,
+)
+from guardbit.model.sizing import Interval, RegisterSizing, Sizing
+from guardbit.plan.cells import (
+    INT16,
+    INT64,
+    UINT64,
+    TooWideError,
+    fits,
+    storage_cell,
+    work_cell,
+)
+from guardbit.plan.evaluate import check
+from guardbit.plan.tail import tail
+
+OUTPUT = "output"
+
+
+@dataclass(frozen=True)
+class _Source:
+    """The row buffer that a pass reads, and what its cells can hold."""
+
+    rows: str
+    pixels: Interval
+
+
+def direct(sizing: Sizing) -> Plan:
+    """Return the direct plan of a filter, checked by the evaluator.
+
+    Codes are taken as the frame has them where every type can hold what comes of that, and
+    are clamped to the legal range on the way in otherwise. Raises TooWideError for what
+    sizing reports as unmet.
+    """
+    f = sizing.filter
+    legal = Interval(f.input.low, f.input.high)
+    stored = container_range(f.input.container)
+    if f.outside is Outside.UNDEFINED:
+        try:
+            return _plan(sizing, None, stored)
+        except TooWideError:
+            return _plan(sizing, legal, legal)
+    if f.outside is Outside.CLAMP and not contains(legal, stored):
+        return _plan(sizing, legal, legal)
+    return _plan(sizing, None, legal)
+
+
+def _plan(sizing: Sizing, clamped: Interval | None, codes: Interval) -> Plan:
+    f = sizing.filter
+    pedestal = f.input.pedestal
+    constant = f.border.value - pedestal
+    pixels = shift(codes, -pedestal)
+    if f.border.mode is BorderMode.CONSTANT:
+        pixels = hull((pixels, Interval(constant, constant)))
+    top, left, span, tap_rows = _reach(f)
+    rows = _rows(f, span[0])
+    steps, word = _steps(sizing, rows, pixels)
+    plan = Plan(
+        name="direct",
+        word=word,
+        top=top,
+        left=left,
+        span=span,
+        tap_rows=tap_rows,
+        load=Load(rows[0].name, clamped, pedestal, constant),
+        rows=rows,
+        steps=steps,
+    )
+    return check(plan, f)
+
+
+def _offsets(f: Filter, axis: int) -> tuple[int, ...]:
+    """Return the offsets on one axis that the passes together read, ascending.
+
+    Only one pass moves along an axis, so that sums over the passes are its own offsets. A
+    pass of zeros counts as one tap that stays: the other pass still has to find its rows.
+    """
+    reach = {0}
+    for stage in f.passes:
+        own = {(t.dy, t.dx)[axis] for t in stage.kernel.terms if t.integer} or {0}
+        reach = {a + b for a in reach for b in own}
+    return tuple(sorted(reach))
+
+
+def _reach(f: Filter) -> tuple[int, int, tuple[int, int], tuple[int, ...]]:
+    """Return (top, left, span, tap rows); where a pass is all zeros no pixel matters."""
+    rows, columns = _offsets(f, 0), _offsets(f, 1)
+    span = (rows[-1] - rows[0] + 1, columns[-1] - columns[0] + 1)
+    reads = all(any(t.integer for t in stage.kernel.terms) for stage in f.passes)
+    return rows[0], columns[0], span, tuple(row - rows[0] for row in rows if reads)
+
+
+def _rows(f: Filter, depth: int) -> tuple[Rows, ...]:
+    """Return the row buffers in the order in which the passes read them."""
+    if len(f.passes) == 1:
+        return (Rows("ring", depth, padded=True),)
+    if is_vertical_first(f):
+        return (Rows("ring", depth, padded=True), Rows("middle", 1, padded=True))
+    return (Rows("line", 1, padded=True), Rows("ring", depth, padded=False))
+
+
+def is_vertical_first(f: Filter) -> bool:
+    """Return whether the first of two passes moves along columns, the second along rows."""
+    first, second = (stage.kernel.terms for stage in f.passes)
+    return all(t.dx == 0 for t in first) and all(t.dy == 0 for t in second)
+
+
+def _steps(
+    sizing: Sizing, rows: tuple[Rows, ...], pixels: Interval
+) -> tuple[tuple[Step, ...], Cell]:
+    """Return the steps and the type of scratch, which is wide enough for what each leaves."""
+    f = sizing.filter
+    last = len(f.passes) - 1
+    steps: list[Step] = []
+    scratch = [pixels]
+    for index, stage in enumerate(f.passes):
+        remove = 0 if index == last else f.passes[index + 1].source.pedestal
+        name = ("first", "second")[index] if last else "row"
+        source = _Source(rows[index].name, scratch[-1])
+        value, argument = _value(source, stage, sizing.registers[index])
+        made, stored = tail(value, argument, stage, remove)
+        target = OUTPUT if index == last else rows[index + 1].name
+        steps.append(Step(name, index, target, made))
+        scratch.append(stored)
+    word = storage_cell(hull(scratch[:-1]))
+    output = Cell(*container_word(f.output.container))
+    return tuple(_typed(step, word, output) for step in steps), word
+
+
+def _typed(step: Step, word: Cell, output: Cell) -> Step:
+    """Return the step with the types that follow from those of scratch and output.
+
+    Unsigned words of 16 bits and more do not promote to int everywhere: no 16-bit groups.
+    """
+    made = replace(step.value, cell=output if step.writes == OUTPUT else word)
+    if word.bits > 16 or word == Cell(16, False):
+        made = replace(made, of=_without_int(made.of))
+    return replace(step, value=made)
+
+
+def _without_int(value: Value) -> Value:
+    if isinstance(value, Field):
+        return replace(value, of=replace(value.of, groups=_widened(value.of)))
+    return replace(value, groups=_widened(value))
+
+
+def _widened(value: Sum | SaturatingSum) -> tuple[Group, ...]:
+    return tuple(replace(g, cell=value.cell) if g.cell == INT16 else g for g in value.groups)
+
+
+def _value(source: _Source, stage: Pass, register: RegisterSizing) -> tuple[Value, Interval]:
+    """Return the accumulator's arithmetic and the interval of its final value."""
+    word = format_range(register.bits, register.signed)
+    preloaded = stage.accumulator.preload is Preload.ROUNDING
+    start = rounding_constant(stage.requantiser) if preloaded else 0
+    terms = tuple(
+        Product(t.integer, Read(source.rows, t.dy, t.dx)) for t in stage.kernel.terms if t.integer
+    )
+    match stage.accumulator.overflow:
+        case Overflow.SATURATE if not contains(word, register.partial):
+            return _saturating(source, start, terms, word)
+        case Overflow.WRAP if not contains(word, register.final):
+            return _field(source, start, terms, register)
+    return _sum(source, start, terms)
+
+
+def _running(start: int, terms: Iterable[Product], pixels: Interval) -> Iterator[Interval]:
+    """Yield the intervals of the partial sums in order, the start value first."""
+    total = Interval(start, start)
+    yield total
+    for term in terms:
+        total = add(total, scale(pixels, term.coefficient))
+        yield total
+
+
+def _operands(terms: Iterable[Product], pixels: Interval) -> Iterator[Interval]:
+    """Yield what each product needs: itself and its coefficient, large even if pixels are 0."""
+    for term in terms:
+        yield scale(pixels, term.coefficient)
+        yield Interval(term.coefficient, term.coefficient)
+
+
+def _sum(source: _Source, start: int, terms: tuple[Product, ...]) -> tuple[Sum, Interval]:
+    partials = tuple(_running(start, terms, source.pixels))
+    cell = work_cell((*partials, *_operands(terms, source.pixels), source.pixels))
+    by_row = (tuple(group) for _, group in groupby(terms, key=lambda term: term.of.dy))
+    groups = tuple(g for row in by_row for g in _groups(row, source.pixels, cell))
+    return Sum(start, groups, cell), partials[-1]
+
+
+def _groups(row: tuple[Product, ...], pixels: Interval, cell: Cell) -> tuple[Group, ...]:
+    """Return the taps of one row as one group if its sum fits, else one by one."""
+    inside = hull((*_running(0, row, pixels), *_operands(row, pixels)))
+    if fits(inside, INT16):
+        return (Group(row, INT16),)
+    if fits(inside, cell):
+        return (Group(row, cell),)
+    return tuple(Group((term,), cell) for term in row)
+
+
+def _saturating(
+    source: _Source, start: int, terms: tuple[Product, ...], word: Interval
+) -> tuple[SaturatingSum, Interval]:
+    begin = clamp(start, word.low, word.high)  # a register starts with what it can hold
+    limits = word if fits(word, INT64) else _reached(begin, terms, source.pixels, word)
+    products = hull((Interval(0, 0), *_operands(terms, source.pixels)))
+    try:
+        cell, guarded = work_cell((add(limits, products), source.pixels)), False
+    except TooWideError:
+        cell, guarded = work_cell((limits, products)), True
+    small = INT16 if fits(products, INT16) else cell
+    groups = tuple(Group((term,), small) for term in terms)
+    return SaturatingSum(begin, groups, limits, cell, guarded), limits
+
+
+def _reached(begin: int, terms: tuple[Product, ...], pixels: Interval, word: Interval) -> Interval:
+    """Return the limits of a register, less what no sum in it can reach.
+
+    An unsigned register of 64 bits has an upper limit that no signed type holds.
+    """
+    products = [scale(pixels, term.coefficient) for term in terms]
+    most = begin + sum(max(0, p.high) for p in products)
+    return Interval(word.low, min(word.high, most))
+
+
+def _field(
+    source: _Source, start: int, terms: tuple[Product, ...], register: RegisterSizing
+) -> tuple[Field, Interval]:
+    bits, signed = register.bits, register.signed
+    values = format_range(bits, signed)
+    try:
+        inner, final = _sum(source, start, terms)
+        values = wrapped(final, bits, signed)
+    except TooWideError:
+        inner = Sum(start, tuple(Group((t,), UINT64) for t in terms), UINT64, modular=True)
+    return Field(inner, bits, signed, work_cell((format_range(bits, signed),))), values

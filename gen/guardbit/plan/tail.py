@@ -1,0 +1,155 @@
+"""The requantiser as C can carry it out: no shift of a negative number, no overflow.
+
+Where the range of the sum is known, a multiple of the divisor that makes the dividend
+non-negative is added before and taken off after the division. Floor division is then C's own
+division (or a right shift), on every compiler, without a branch.
+"""
+
+from dataclasses import dataclass
+
+from guardbit.arith.intervals import clamp_to, contains, scale, shift, unlimited_range
+from guardbit.arith.rounding import ratio, round_ratio
+from guardbit.model.enums import Overflow, Preload, Rounding
+from guardbit.model.filter import Pass, Requantiser
+from guardbit.model.plan import (
+    Exact,
+    Floor,
+    Quotient,
+    Tail,
+    Thresholds,
+    TiesToAway,
+    TiesToEven,
+    Truncate,
+    Value,
+)
+from guardbit.model.sizing import Interval
+from guardbit.plan.cells import INT64, fits, work_cell
+
+
+@dataclass(frozen=True)
+class Division:
+    """A rounded division by `divisor` of every integer in `numerators`."""
+
+    numerators: Interval
+    divisor: int
+    mode: Rounding
+
+
+def quotient(d: Division) -> Quotient:
+    """Return the form in which C computes a rounded division."""
+    if d.divisor == 1:
+        return Exact()
+    if max(-d.numerators.low, d.numerators.high) < d.divisor:
+        return _thresholds(d)
+    half = d.divisor // 2
+    match d.mode:
+        case Rounding.TOWARD_NEGATIVE:
+            return _floor(d, 0)
+        case Rounding.TOWARD_POSITIVE:
+            return _floor(d, d.divisor - 1)
+        case Rounding.TOWARD_ZERO:
+            return _floor(d, 0) if d.numerators.low >= 0 else Truncate(d.divisor)
+        case Rounding.TIES_TO_POSITIVE:
+            return _floor(d, half)
+        case Rounding.TIES_TO_AWAY:
+            return _floor(d, half) if d.numerators.low >= 0 else TiesToAway(half, d.divisor)
+        case Rounding.TIES_TO_EVEN:
+            # an odd divisor has no ties
+            return _ties_to_even(d, half) if d.divisor % 2 == 0 else _floor(d, half)
+
+
+def _thresholds(d: Division) -> Thresholds:
+    """Return where the quotient of numerators smaller than the divisor becomes 1 and -1."""
+
+    def rounded(n: int) -> int:
+        return round_ratio(n, d.divisor, d.mode)
+
+    low, high = d.numerators.low, d.numerators.high
+    guesses = (1, d.divisor // 2, d.divisor // 2 + 1, (d.divisor + 1) // 2)
+    up = next((n for n in sorted(guesses) if rounded(n) == 1), None)
+    down = next((-n for n in sorted(guesses) if rounded(-n) == -1), None)
+    return Thresholds(
+        up if up is not None and up <= high else None,
+        down if down is not None and low <= down else None,
+    )
+
+
+def _lift(d: Division, add: int, step: int) -> tuple[int, bool]:
+    """Return (multiple of `step` that makes the dividend non-negative, whether it fits)."""
+    lowest = d.numerators.low + add
+    lift = 0 if lowest >= 0 else -(lowest // step) * step
+    return (lift, True) if fits(shift(d.numerators, add + lift), INT64) else (0, False)
+
+
+def _floor(d: Division, add: int) -> Floor:
+    lift, natural = _lift(d, add, d.divisor)
+    return Floor(add + lift, d.divisor, lift // d.divisor, natural)
+
+
+def _ties_to_even(d: Division, half: int) -> TiesToEven:
+    lift, natural = _lift(d, half, 2 * d.divisor)
+    return TiesToEven(half + lift, d.divisor, lift // d.divisor, natural)
+
+
+def _inside(d: Division, form: Quotient) -> tuple[Interval, ...]:
+    """Return the intervals of the intermediate numbers of a form, constants included."""
+    n = d.numerators
+    match form:
+        case Exact():
+            return (n,)
+        case Thresholds(up, down):
+            return (n, *(Interval(t, t) for t in (up, down) if t is not None))
+        case Floor(add, divisor, less, _) | TiesToEven(add, divisor, less, _):
+            return (n, shift(n, add), Interval(-less, divisor))
+        case Truncate(divisor):
+            return (n, Interval(-divisor, divisor))
+        case TiesToAway(half, divisor):
+            return (n, Interval(n.low - half, n.high + half), Interval(-half, divisor))
+
+
+def tail(value: Value, argument: Interval, stage: Pass, remove: int) -> tuple[Tail, Interval]:
+    """Return the tail of a pass for sums in `argument`, and the interval that it stores.
+
+    Its `cell` is the work cell until the plan knows what scratch holds. Raises TooWideError.
+    """
+    r = stage.requantiser
+    preloaded = stage.accumulator.preload is Preload.ROUNDING
+    numerator, denominator = ratio(r)
+    if argument == Interval(0, 0):
+        numerator = 1  # any power of two times nothing, of which the largest fit no C integer
+    mode = Rounding.TOWARD_NEGATIVE if preloaded else r.rounding
+    division = Division(scale(argument, numerator), denominator, mode)
+    form = quotient(division)
+    limits = Interval(r.to.low, r.to.high)
+    unlimited = unlimited_range(r, preloaded, argument)
+    overflow = _overflow(r, unlimited)
+    early = 0 if overflow is Overflow.WRAP else remove
+    less = form.less if isinstance(form, Floor | TiesToEven) else 0
+    inside = (argument, *_inside(division, form), unlimited, limits, shift(unlimited, -remove))
+    work = work_cell(inside)
+    stored = shift(limits if overflow is Overflow.WRAP else clamp_to(unlimited, limits), -remove)
+    made = Tail(
+        of=value,
+        multiplier=numerator,
+        quotient=form,
+        offset=r.to.pedestal - less - early,
+        overflow=overflow,
+        limits=shift(limits, -early),
+        remove=remove,
+        argument=argument,
+        unlimited=shift(unlimited, -early),
+        work=work,
+        cell=work,
+    )
+    return made, stored
+
+
+def _overflow(r: Requantiser, unlimited: Interval) -> Overflow | None:
+    """Return the overflow action that is needed.
+
+    Under `forbid` legal frames never leave the limits; codes outside the range still may,
+    and clamping those is one of the values that the contract leaves open.
+    """
+    if contains(Interval(r.to.low, r.to.high), unlimited):
+        return None
+    return Overflow.WRAP if r.overflow is Overflow.WRAP else Overflow.SATURATE

@@ -1,0 +1,1 @@
+"""Every line of C that guardbit can write."""
