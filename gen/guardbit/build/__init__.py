@@ -1,0 +1,1 @@
+"""Compilers, their flags, and runners that call compiled code in child processes."""
