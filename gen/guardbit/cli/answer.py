@@ -1,0 +1,49 @@
+"""What one command found out about one spec, and the exit status that it calls for."""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field
+
+from guardbit.model.certificate import Certificate, Digest, RungResult
+from guardbit.model.finding import Finding
+from guardbit.model.sizing import Sizing
+
+HOLDS = 0
+FAILED = 1
+WRONG = 2
+MISSING = 3
+FAULT = 70
+INTERRUPTED = 130
+ENDED = 143
+PIPE_CLOSED = 141
+
+# The first of these that any spec has is the exit status of a call with many.
+_ORDER = (FAULT, WRONG, MISSING, FAILED, HOLDS)
+
+
+@dataclass(frozen=True)
+class Answer:
+    """`files` are texts to be written, by name. `fault` is a traceback: an error in guardbit."""
+
+    spec: str
+    status: int = HOLDS
+    findings: tuple[Finding, ...] = ()
+    sizing: Sizing | None = None
+    certificate: Certificate | None = None
+    files: Mapping[str, str] = field(default_factory=dict)
+    folder: str = ""
+    written: tuple[Digest, ...] = ()
+    fault: str = ""
+
+
+def overall(statuses: Iterable[int]) -> int:
+    """Return the exit status for many specs: a fault, else 2, else 3, else 1, else 0."""
+    present = set(statuses)
+    return next((status for status in _ORDER if status in present), HOLDS)
+
+
+def rung_status(rungs: Iterable[RungResult]) -> int:
+    """Return 1 if a rung failed, else 3 if one could not run, else 0."""
+    rungs = tuple(rungs)
+    if not rungs or any(rung.ran and not rung.holds for rung in rungs):
+        return FAILED
+    return HOLDS if all(rung.ran for rung in rungs) else MISSING

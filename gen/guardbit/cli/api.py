@@ -1,0 +1,169 @@
+"""guardbit from Python: what the commands do, as functions. Nothing is printed.
+
+    from guardbit.cli import api
+    sizing = api.size("soften5.toml")
+    api.write(api.emit("soften5.toml"), "out")
+
+Rooms are imported inside the functions, so that importing this module costs nothing.
+"""
+
+import os
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from guardbit import __version__
+from guardbit.model.certificate import Certificate, Digest, RungResult
+from guardbit.model.finding import Finding, Place, SpecError
+from guardbit.model.sizing import Sizing
+from guardbit.model.spec import Spec
+from guardbit.report.cautions import CAUTIONS
+
+if TYPE_CHECKING:
+    from guardbit.model.plan import Plan
+    from guardbit.model.routine import Emission
+
+TOOL = f"guardbit {__version__}"
+
+
+@dataclass(frozen=True)
+class Product:
+    """What one spec gives: its certificate, and every file's text by name."""
+
+    certificate: Certificate
+    files: Mapping[str, str]
+
+
+def read(spec: str | Path) -> Spec:
+    """Return a spec as written. Raises SpecError with everything that is wrong with it."""
+    from guardbit.spec.reader import read_spec
+
+    return read_spec(Path(spec))
+
+
+def size(spec: str | Path | Spec) -> Sizing:
+    """Return every register's exact ranges and widths, and the error bound.
+
+    Raises SpecError. A `forbid` that is not met raises nothing here: see `unmet`.
+    """
+    from guardbit.fit.resolve import resolve
+    from guardbit.sizing.analyse import analyse
+
+    return analyse(resolve(_spec(spec)))
+
+
+def unmet(sizing: Sizing, spec: Spec) -> tuple[Finding, ...]:
+    """Return a finding for every `forbid` that is not met and every width that is refused."""
+    from guardbit.sizing.analyse import unmet as broken
+
+    return tuple(_lined(found, spec) for found in broken(sizing, Place(spec.path)))
+
+
+def emit(spec: str | Path | Spec) -> Product:
+    """Return the C, its self-check and the certificate. Raises SpecError."""
+    made = _spec(spec)
+    sizing = _allowed(made)
+    return _product(made, sizing, *_emitted(sizing))
+
+
+def verify(
+    spec: str | Path | Spec,
+    compiler: str | None = None,
+    photograph: str | Path | None = None,
+    keep: str | Path | None = None,
+) -> Product:
+    """Return what `emit` does, with the evidence of every rung in the certificate.
+
+    `compiler` is a command ($CC's words, else the machine's own); `photograph` an image that
+    is run as well; `keep` a folder for what reproduces a mismatch. A check that failed raises
+    nothing: its findings are in the rungs. Raises SpecError, MachineError.
+    """
+    made = _spec(spec)
+    sizing = _allowed(made)
+    plan, emission = _emitted(sizing)
+    rungs = _climbed(sizing, emission, compiler, photograph, keep)
+    return _product(made, sizing, plan, emission, rungs)
+
+
+def write(product: Product, folder: str | Path, force: bool = False) -> tuple[Digest, ...]:
+    """Write the files of a product into `folder`, all or none, and return their digests.
+
+    Raises SpecError if one of them was edited since it was written, unless `force`.
+    """
+    from guardbit.cli.output import write_files
+
+    return write_files(Path(folder), product.files, force)
+
+
+def _spec(spec: str | Path | Spec) -> Spec:
+    return spec if isinstance(spec, Spec) else read(spec)
+
+
+def _lined(found: Finding, spec: Spec) -> Finding:
+    """Return the finding with the line of its key, if the file has the key."""
+    line = spec.lines.get(found.place.key or "")
+    return replace(found, place=replace(found.place, line=line))
+
+
+def _allowed(spec: Spec) -> Sizing:
+    sizing = size(spec)
+    if findings := unmet(sizing, spec):
+        raise SpecError(*findings)
+    return sizing
+
+
+def _emitted(sizing: Sizing) -> "tuple[Plan, Emission]":
+    from guardbit.cli.embedded import embedded
+    from guardbit.emit.emission import emit as texts
+    from guardbit.plan.direct import direct
+
+    plan = direct(sizing)
+    return plan, texts(sizing, plan, embedded(sizing))
+
+
+def _climbed(
+    sizing: Sizing,
+    emission: "Emission",
+    command: str | None,
+    photograph: str | Path | None,
+    keep: str | Path | None,
+) -> tuple[RungResult, ...]:
+    from guardbit.build.compiler import find_compiler
+    from guardbit.cli.measured import measure
+    from guardbit.files.images import read_image
+    from guardbit.verify.bench import Options
+    from guardbit.verify.ladder import climb
+
+    options = Options(
+        photograph=read_image(Path(photograph)) if photograph is not None else None,
+        folder=Path(keep) if keep is not None else None,
+    )
+    found = find_compiler({**os.environ, "CC": command} if command else None)
+    rungs = climb(sizing, emission.routine, emission.probes, found, options)
+    return (*rungs, measure(sizing, options.photograph))
+
+
+def _product(
+    spec: Spec,
+    sizing: Sizing,
+    plan: "Plan",
+    emission: "Emission",
+    rungs: tuple[RungResult, ...] = (),
+) -> Product:
+    from guardbit.files.writing import digest
+    from guardbit.report.certificate import SCHEMA, certificate_text
+
+    texts = {file.name: file.text for file in emission.files}
+    certificate = Certificate(
+        schema=SCHEMA,
+        tool=TOOL,
+        cautions=CAUTIONS,
+        spec=Digest(Path(spec.path).name, spec.digest),
+        emitted=tuple(Digest(name, digest(text.encode("utf-8"))) for name, text in texts.items()),
+        plan=plan.name,
+        sizing=sizing,
+        rungs=rungs,
+    )
+    name = f"{spec.filter.name}.cert.json"
+    return Product(certificate, {**texts, name: certificate_text(certificate)})

@@ -1,0 +1,148 @@
+"""The error that frames show: output codes against the ideal filter, in exact arithmetic.
+
+The ideal filter is run as one whose integer taps are the ideal ones times their common
+denominator; its sums are then exact whole numbers, however large.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from fractions import Fraction
+from math import lcm
+
+import numpy as np
+
+from guardbit.model.certificate import Figure, RungResult
+from guardbit.model.enums import Overflow, Preload, Scale
+from guardbit.model.filter import Accumulator, Filter, Kernel, Term
+from guardbit.model.finding import Finding, finding
+from guardbit.model.sizing import Sizing
+from guardbit.model.vectors import Codes, Vector
+from guardbit.reference.run import respond
+from guardbit.report.text import lower, signed, upper
+from guardbit.vectors.stimuli import answered, stimuli
+
+NAME = "error"
+# Products of one frame: sums of fifty digits are slow.
+_MOST_WORK = 1 << 22
+
+
+@dataclass(frozen=True)
+class Span:
+    """The least and the greatest error of a frame, in LSB, over `outputs` output codes."""
+
+    frame: str
+    low: Fraction
+    high: Fraction
+    outputs: int
+
+
+def measure(sizing: Sizing, photograph: Codes | None = None) -> RungResult:
+    """Return the largest error over structured and random frames, held against the bound.
+
+    The bound is a claim about all legal frames: one that goes beyond it is a finding.
+    """
+    filter_ = sizing.filter
+    chosen = [s for s in stimuli(filter_, photograph) if _legal(filter_, s.frame)]
+    taps = len(_ideal_terms(filter_))
+    small = [s for s in chosen if s.frame.size * taps <= _MOST_WORK]
+    spans = _spans(filter_, answered(filter_, small))
+    findings = () if sizing.error.assumes_no_wrap else tuple(_beyond(sizing, spans))
+    skipped = len(chosen) - len(small)
+    return RungResult(
+        NAME,
+        ran=True,
+        cases=len(spans),
+        covered=(f"{sum(s.outputs for s in spans)} output codes against the ideal filter",),
+        not_covered=(
+            "the bound holds for all legal frames by analysis; these need not attain it",
+            *([f"{skipped} frames are too large for exact arithmetic here"] if skipped else []),
+        ),
+        figures=_figures(spans),
+        findings=findings,
+    )
+
+
+def _figures(spans: Sequence[Span]) -> tuple[Figure, ...]:
+    if not spans:
+        return ()
+    low, high = min(s.low for s in spans), max(s.high for s in spans)
+    return (Figure("largest error measured", f"{_low(low)} .. {_high(high)}", "LSB"),)
+
+
+def _low(value: Fraction) -> str:
+    return signed(lower(value))
+
+
+def _high(value: Fraction) -> str:
+    return signed(upper(value))
+
+
+def _beyond(sizing: Sizing, spans: Sequence[Span]) -> list[Finding]:
+    bound = sizing.error
+    return [
+        finding(
+            "error-beyond-bound",
+            frame=span.frame,
+            least=_low(span.low),
+            greatest=_high(span.high),
+            low=_low(bound.low),
+            high=_high(bound.high),
+        )
+        for span in spans
+        if span.low < bound.low or span.high > bound.high
+    ]
+
+
+def _legal(filter_: Filter, frame: Codes) -> bool:
+    return bool(frame.min() >= filter_.input.low and frame.max() <= filter_.input.high)
+
+
+def _spans(filter_: Filter, vectors: Sequence[Vector]) -> list[Span]:
+    scale, ideal = _scaled(filter_)
+    return [_span(filter_, scale, ideal, v) for v in vectors if v.response.output.size]
+
+
+def _span(filter_: Filter, scale: int, ideal: Filter, vector: Vector) -> Span:
+    to = filter_.output
+    shift = to.frac - filter_.input.frac
+    up, down = 2 ** max(shift, 0), 2 ** max(-shift, 0) * scale
+    sums = respond(ideal, vector.frame).accumulators[-1].astype(object)
+    # Everything times `down`, so that all numbers are whole.
+    code = np.clip(sums * up + to.pedestal * down, to.low * down, to.high * down)
+    error = vector.response.output.astype(object) * down - code
+    low, high = Fraction(error.min(), down), Fraction(error.max(), down)
+    return Span(vector.name, low, high, error.size)
+
+
+def _scaled(filter_: Filter) -> tuple[int, Filter]:
+    """Return (denominator, filter): its sums are the ideal filter's times the denominator."""
+    terms = _ideal_terms(filter_)
+    scale = lcm(*(ideal.denominator for ideal in terms.values()))
+    whole = tuple(
+        Term(dy, dx, ideal, int(ideal * scale)) for (dy, dx), ideal in sorted(terms.items())
+    )
+    first, last = filter_.passes[0], filter_.passes[-1]
+    kernel = replace(first.kernel, terms=whole, scale=Scale.BINARY, frac=0, divisor=1)
+    # The width is not looked at where sums neither wrap nor saturate.
+    sums = Accumulator(64, True, Overflow.FORBID, Preload.ZERO)
+    codes = replace(last.requantiser, exponent=0, divisor=1, overflow=Overflow.SATURATE)
+    one = replace(first, kernel=kernel, accumulator=sums, requantiser=codes)
+    return scale, replace(filter_, passes=(one,))
+
+
+def _ideal_terms(filter_: Filter) -> dict[tuple[int, int], Fraction]:
+    """Return the ideal taps by offset; of two passes, their outer product."""
+    terms = {(0, 0): Fraction(1)}
+    for each in filter_.passes:
+        terms = _product(terms, each.kernel)
+    return terms
+
+
+def _product(
+    terms: dict[tuple[int, int], Fraction], kernel: Kernel
+) -> dict[tuple[int, int], Fraction]:
+    return {
+        (dy + term.dy, dx + term.dx): ideal * term.ideal
+        for (dy, dx), ideal in terms.items()
+        for term in kernel.terms
+    }

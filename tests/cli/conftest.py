@@ -1,0 +1,99 @@
+"""A small spec, and the command run in this process or in one of its own."""
+
+import os
+import subprocess
+import sys
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import ExitStack
+from dataclasses import dataclass
+from pathlib import Path
+from typing import IO
+
+import pytest
+
+from guardbit.cli.main import status_of
+
+SOFTEN = """\
+[filter]
+name = "{name}"
+summary = "3x3 binomial"
+[kernel]
+taps = [[1, 2, 1], [2, 4, 2], [1, 2, 1]]
+divisor = 16
+[input]
+bits = 8
+[accumulator]
+bits = {bits}
+[border]
+mode = "replicate"
+"""
+
+
+@dataclass(frozen=True)
+class Ran:
+    status: int
+    out: str
+    err: str
+
+
+Guardbit = Callable[..., Ran]
+
+
+@pytest.fixture
+def soften(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
+    """Return a sound spec soften3.toml in the current folder, which is a fresh one."""
+    monkeypatch.chdir(tmp_path)
+    return write_spec("soften3")
+
+
+def write_spec(name: str, bits: str = '"auto"', file: str | None = None) -> Path:
+    path = Path(file or f"{name}.toml")
+    path.write_text(SOFTEN.format(name=name, bits=bits), encoding="utf-8")
+    return path
+
+
+@pytest.fixture
+def spec_file() -> Callable[..., Path]:
+    """Return a maker of specs in the current folder: (name, accumulator bits, file)."""
+    return write_spec
+
+
+@pytest.fixture
+def guardbit(capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch) -> Guardbit:
+    """Return the command, run in this process, its streams not terminals."""
+    monkeypatch.delenv("GUARDBIT_DEBUG", raising=False)
+
+    def run(*arguments: str | Path) -> Ran:
+        status = status_of([str(each) for each in arguments])
+        captured = capsys.readouterr()
+        return Ran(status, captured.out, captured.err)
+
+    return run
+
+
+@pytest.fixture
+def start() -> Iterator[Callable[..., "subprocess.Popen[str]"]]:
+    """Yield the command as a process of its own, leading a group of its own.
+
+    `env` adds to the environment; `stdout` is a pipe unless a file is given.
+    """
+    with ExitStack() as stack:
+
+        def run(
+            *arguments: str | Path,
+            env: Mapping[str, str] | None = None,
+            stdout: IO[str] | int = subprocess.PIPE,
+        ) -> "subprocess.Popen[str]":
+            process = subprocess.Popen(
+                [sys.executable, "-m", "guardbit.cli.main", *map(str, arguments)],
+                stdout=stdout,
+                stderr=subprocess.PIPE,
+                text=True,
+                env={**os.environ, **(env or {})},
+                process_group=0,
+            )
+            stack.enter_context(process)
+            stack.callback(process.kill)
+            return process
+
+        yield run

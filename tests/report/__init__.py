@@ -1,0 +1,1 @@
+"""Tests of the sentences, the terminal text and the certificate."""
