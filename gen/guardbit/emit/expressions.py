@@ -19,6 +19,7 @@ from guardbit.model.plan import (
 )
 
 _MINIMA = {-(1 << 31): "INT32_MIN", -(1 << 63): "INT64_MIN"}
+_INT_MAX = 32767
 
 
 def cell_type(cell: Cell) -> str:
@@ -28,11 +29,16 @@ def cell_type(cell: Cell) -> str:
 
 def container_type(container: Container) -> str:
     """Return the C type of a container."""
-    return ("int" if container.value[0] == "i" else "uint") + container.value[1:] + "_t"
+    return cell_type(Cell(container.bits, container.signed))
 
 
 def number(value: int) -> str:
-    """Return a C99 constant; its type is the first of int, long, long long that holds it."""
+    """Return a C99 constant; its type is the first of int, long, long long that holds it.
+
+    Only what none of them holds, uint64's upper half, is unsigned (6.4.4.1p5).
+    """
+    if value > (1 << 63) - 1:
+        return f"{value}u"
     return _MINIMA.get(value, str(value))
 
 
@@ -42,12 +48,32 @@ def plus(expression: str, value: int) -> str:
         return expression
     if value in _MINIMA:
         return f"{expression} + {number(value)}"
-    return f"{expression} {'-' if value < 0 else '+'} {abs(value)}"
+    return f"{expression} {'-' if value < 0 else '+'} {number(abs(value))}"
+
+
+def times(factor: int, expression: str) -> str:
+    """Return the expression multiplied by a constant."""
+    return expression if factor == 1 else f"{factor} * {grouped(expression)}"
 
 
 def grouped(expression: str) -> str:
-    """Return the expression in brackets, unless it is one name or call."""
-    return expression if " " not in expression else f"({expression})"
+    """Return the expression in brackets, unless it is one name, cast or call."""
+    return f"({expression})" if _is_open(expression) else expression
+
+
+def _is_open(expression: str) -> bool:
+    """Return whether there is a space outside of all brackets."""
+    depth = 0
+    for character in expression:
+        depth += {"(": 1, "[": 1, ")": -1, "]": -1}.get(character, 0)
+        if character == " " and depth == 0:
+            return True
+    return False
+
+
+def cast(kind: str, expression: str, held: str) -> str:
+    """Return the expression converted from type `held` to `kind`."""
+    return expression if kind == held else f"({kind}){grouped(expression)}"
 
 
 def product(term: Product, read: str, cell: Cell, word: Cell) -> str:
@@ -109,16 +135,23 @@ def quotient(form: Quotient, n: str) -> tuple[tuple[tuple[str, str], ...], str]:
 
 def _thresholds(n: str, up: int | None, down: int | None) -> str:
     above = f"({n} >= {number(up)})" if up is not None else ""
-    if down is None:
-        return above or "0"
-    return f"{above or '0'} - ({n} <= {number(down)})"
+    below = f"({n} <= {number(down)})" if down is not None else ""
+    return f"{above or '0'} - {below}" if below else above
 
 
-def with_offset(form: Quotient, expression: str, offset: int) -> str:
-    """Return the quotient with the offset added; a shift binds less than a sum."""
-    if offset == 0:
-        return expression
-    return plus(f"({expression})" if ">>" in expression else expression, offset)
+def with_offset(form: Quotient, expression: str, offset: int, work: Cell) -> str:
+    """Return the quotient with the offset added.
+
+    A shift binds less than a sum. Comparisons are of type int, which may be too small for
+    the sum (and is signed).
+    """
+    if not expression:
+        return number(offset)
+    if isinstance(form, Thresholds) and (abs(offset) >= _INT_MAX or not work.signed):
+        expression = f"({cell_type(work)}){grouped(expression)}"
+    if ">>" in expression and offset:
+        expression = f"({expression})"
+    return plus(expression, offset)
 
 
 def low_bits(value: str, bits: int, unsigned: str) -> str:
@@ -127,15 +160,20 @@ def low_bits(value: str, bits: int, unsigned: str) -> str:
     return full if unsigned == f"uint{bits}_t" else f"{full} & {2**bits - 1:#x}"
 
 
-def from_low_bits(bits: int, signed: bool, result: str, wide: str) -> str:
-    """Return the number that the lowest bits in `low` stand for, as a `result`.
+def from_low_bits(bits: int, signed: bool, result: str, unsigned: str) -> str:
+    """Return the number that the lowest bits in `low`, of type `unsigned`, stand for.
 
-    Nothing out of range is ever converted to a signed type: the upper half is moved down first.
+    Nothing out of range is ever converted to a signed type (6.3.1.3p3): the upper half is
+    moved down first. `result` holds every number of the format.
     """
     if not signed:
-        return f"({result})low"
+        return cast(result, "low", unsigned)
     half = 1 << (bits - 1)
-    upper = plus(f"({wide})(low - {half:#x})", -half)
-    if wide == result:
-        return f"low < {half:#x} ? ({wide})low : {upper}"
-    return f"({result})(low < {half:#x} ? ({wide})low : {upper})"
+    wide = holder(-half, half - 1)
+    choice = f"low < {half:#x} ? ({wide})low : {plus(f'({wide})(low - {half:#x})', -half)}"
+    return choice if wide == result else f"({result})({choice})"
+
+
+def holder(low: int, high: int) -> str:
+    """Return the type, int32_t or int64_t, that holds low..high."""
+    return "int32_t" if low >= -(1 << 31) and high < 1 << 31 else "int64_t"

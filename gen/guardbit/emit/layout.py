@@ -9,7 +9,7 @@ WIDTH = 96
 
 
 def fold(text: str) -> str:
-    """Return declarations or calls with lines over WIDTH broken after commas, indented by 4."""
+    """Return C with lines over WIDTH broken after commas, or before a colon; indented by 4."""
     return "\n".join(_folded(line) for line in text.split("\n"))
 
 
@@ -17,6 +17,8 @@ def _folded(line: str) -> str:
     if len(line) <= WIDTH:
         return line
     indent = " " * (len(line) - len(line.lstrip()) + 4)
+    if ", " not in line:
+        return f"\n{indent}: ".join(line.rsplit(" : ", 1))
     lines, current = [], ""
     for piece in line.split(", "):
         joined = f"{current}, {piece}" if current else piece
@@ -27,21 +29,32 @@ def _folded(line: str) -> str:
     return "\n".join([*lines, current])
 
 
-def comment(text: str) -> str:
+def harmless(text: str) -> str:
+    """Return text that can stand in a C comment: it neither ends nor opens one."""
+    return text.replace("*/", "* /").replace("/*", "/ *").replace("??", "? ?")
+
+
+def comment(text: str, indent: int = 0) -> str:
     """Return a sentence or two as a C comment, on as many lines as they take."""
-    words = " ".join(text.split())
-    if len(words) + 6 <= WIDTH:
+    words = " ".join(harmless(text).split())
+    left = " " * indent
+    if indent + len(words) + 6 <= WIDTH:
         return f"/* {words} */"
-    lines = textwrap.wrap(words, WIDTH - 6, break_on_hyphens=False)
-    return "/* " + "\n * ".join(lines) + " */"
+    lines = textwrap.wrap(words, WIDTH - indent - 6, break_on_hyphens=False)
+    return "/* " + f"\n{left} * ".join(lines) + " */"
 
 
 def prose(lines: Sequence[str]) -> str:
-    """Return lines of text as the inside of a C comment block."""
+    """Return lines of text as the inside of a C comment block; long ones are broken.
+
+    Two spaces in a row or more start a column, under which a broken line goes on.
+    """
     wrapped: list[str] = []
     for line in lines:
-        indent = " " * (len(line) - len(line.lstrip()) + 2)
-        wrapped += textwrap.wrap(line, WIDTH - 4, subsequent_indent=indent) or [""]
+        column = line.rfind("  ") + 2 if "  " in line else 0
+        wrapped += textwrap.wrap(
+            harmless(line), WIDTH - 4, subsequent_indent=" " * column, break_on_hyphens=False
+        ) or [""]
     return "\n".join(f" * {line}".rstrip() for line in wrapped)
 
 

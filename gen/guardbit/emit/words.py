@@ -1,8 +1,12 @@
 """Sentences for the comments of emitted C: the contract of this one filter."""
 
+from fractions import Fraction
+from math import ceil, floor
+
 from guardbit.model.enums import (
     BorderMode,
     Extent,
+    Grid,
     Operation,
     Outside,
     Overflow,
@@ -11,14 +15,14 @@ from guardbit.model.enums import (
 )
 from guardbit.model.filter import Filter, Pass, PixelFormat, Requantiser
 from guardbit.model.plan import Tail
-from guardbit.model.sizing import RegisterSizing, Sizing
+from guardbit.model.sizing import ErrorBound, RegisterSizing, Sizing
 
 MODES = {
     BorderMode.CONSTANT: "a constant",
-    BorderMode.REPLICATE: "the nearest edge pixel",
-    BorderMode.HALF_SAMPLE: "mirrored between the edge samples, which repeat",
-    BorderMode.WHOLE_SAMPLE: "mirrored on the edge samples",
-    BorderMode.PERIODIC: "the image repeats",
+    BorderMode.REPLICATE: "the nearest pixel of the edge",
+    BorderMode.HALF_SAMPLE: "mirrored, with the pixel of the edge twice",
+    BorderMode.WHOLE_SAMPLE: "mirrored, with the pixel of the edge once",
+    BorderMode.PERIODIC: "the image again and again",
 }
 ROUNDINGS = {
     Rounding.TOWARD_NEGATIVE: "rounded toward minus infinity",
@@ -78,13 +82,42 @@ def tail_comment(stage: Pass, tail: Tail) -> str:
     return f"{text}."
 
 
-def register_words(register: RegisterSizing) -> list[str]:
-    """Return what is known of an accumulator, line by line."""
+def step_words(name: str, *, vertical: bool) -> str:
+    """Return what a row step does."""
+    along = "down the columns" if vertical else "along the rows"
+    return {
+        "row": "Compute one output row. `top` is the extended row that the uppermost tap reads.",
+        "first": f"The first pass, {along}: one row of intermediate codes.",
+        "second": f"The second pass, {along}: one output row.",
+    }[name]
+
+
+def ranges(register: RegisterSizing) -> str:
+    """Return what an accumulator reaches before wrapping or clamping, for legal codes."""
+    final, partial = register.final, register.partial
+    text = f"{final.low} to {final.high} at the end"
+    if partial != final:
+        text += f", {partial.low} to {partial.high} on the way"
+    if register.held != final:
+        text += f"; the register holds {register.held.low} to {register.held.high} of it"
+    return f"{text}, for legal codes"
+
+
+def register_words(register: RegisterSizing, stage: Pass) -> list[str]:
+    """Return what is known of an accumulator, a sentence each."""
     kind = "two's complement" if register.signed else "unsigned"
-    sums = f"sums {register.final.low} to {register.final.high}"
-    partial = f"partial sums {register.partial.low} to {register.partial.high}"
-    needs = f"needs {register.bits_forbid}, has {register.bits} bits, {kind}"
-    return [f"{register.name}: {needs}", f"  {sums}; {partial}"]
+    does = {
+        Overflow.FORBID: "cannot overflow",
+        Overflow.WRAP: f"wraps modulo 2^{register.bits} at every add",
+        Overflow.SATURATE: "saturates at every add",
+    }[stage.accumulator.overflow]
+    fits = register.bits >= register.bits_forbid and (register.signed or register.partial.low >= 0)
+    if fits and stage.accumulator.overflow is not Overflow.FORBID:
+        does = "cannot overflow, so that no sum wraps or saturates"
+    return [
+        f"{register.bits} bits, {kind}, of which {register.bits_forbid} are needed; {does};",
+        ranges(register),
+    ]
 
 
 def _operation(f: Filter) -> str:
@@ -119,26 +152,58 @@ def _outside(f: Filter) -> str:
 def contract(sizing: Sizing) -> list[str]:
     """Return the arithmetic of a filter, line by line, for the header's reader."""
     f = sizing.filter
-    border = MODES[f.border.mode]
-    if f.border.mode is BorderMode.CONSTANT:
-        border = f"the constant {f.border.value}"
     lines = [
         f"{f.operation.value}: {_operation(f)}",
         "",
-        f"source:  {format_words(f.input)};",
-        f"         other codes {_outside(f)}",
-        f"output:  {format_words(f.output)};",
-        f"         {_extent(f)}",
-        f"border:  {border}",
+        *_entry("source", f"{format_words(f.input)};", f"other codes {_outside(f)}"),
+        *_entry("border", _border(f)),
+    ]
+    for index, (register, stage) in enumerate(zip(sizing.registers, f.passes, strict=True)):
+        number = f" {index + 1}" if len(f.passes) > 1 else ""
+        lines += _entry(f"accumulator{number}", *register_words(register, stage))
+        lines += _entry(f"requantiser{number}", tail_words(stage))
+    lines += _entry("output", f"{format_words(f.output)};", _extent(f))
+    lines += _entry("error", *_error(sizing.error))
+    return [
+        *lines,
         "",
+        "These bounds hold only for codes inside the declared range of the source. They are",
+        "engineering evidence, not the work of a qualified tool: verifying the product stays with",
+        "the engineer who is responsible for it.",
     ]
-    for register, stage in zip(sizing.registers, f.passes, strict=True):
-        lines += register_words(register)
-        lines += [f"  then {tail_words(stage)}."]
-    low, high = (f"{float(v):.4g}" for v in (sizing.error.low, sizing.error.high))
-    lines += ["", f"Error against the ideal filter: {low} to {high} steps of the output code"]
-    lines += [
-        "for legal sources"
-        + (" that do not make a register overflow." if sizing.error.assumes_no_wrap else ".")
-    ]
+
+
+_COLUMN = 16
+
+
+def _entry(word: str, *texts: str) -> list[str]:
+    """Return a word and what is said of it, in two columns."""
+    first, *others = texts
+    return [word.ljust(_COLUMN) + first, *(" " * _COLUMN + text for text in others)]
+
+
+def _border(f: Filter) -> str:
+    if f.border.mode is BorderMode.CONSTANT:
+        return f"outside the image: the code {f.border.value}"
+    site = f.border.grid is Grid.SITE
+    return f"outside the image: {MODES[f.border.mode]}" + (", each site of a mosaic alone" * site)
+
+
+def _error(error: ErrorBound) -> list[str]:
+    low, high = outward(error.low, up=False), outward(error.high, up=True)
+    lines = [f"{low} to {high} LSB of the output code against the ideal filter"]
+    if error.assumes_no_wrap:
+        lines[0] += ";"
+        lines.append("where neither a register nor the output wraps or saturates in mid-sum")
     return lines
+
+
+_PLACES = 10**4
+
+
+def outward(value: Fraction, *, up: bool) -> str:
+    """Return a bound with at most four decimals, rounded away from what it bounds."""
+    scaled = ceil(value * _PLACES) if up else floor(value * _PLACES)
+    whole, rest = divmod(abs(scaled), _PLACES)
+    text = f"{whole}.{rest:04}".rstrip("0").rstrip(".")
+    return f"-{text}" if scaled < 0 else text

@@ -84,3 +84,13 @@ class Container(StrEnum):
     I16 = "i16"
     U32 = "u32"
     I32 = "i32"
+
+    @property
+    def bits(self) -> int:
+        """Return the width of the type."""
+        return int(self.value[1:])
+
+    @property
+    def signed(self) -> bool:
+        """Return whether the type is two's complement."""
+        return self.value[0] == "i"

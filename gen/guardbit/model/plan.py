@@ -37,14 +37,15 @@ class Rows:
 class Load:
     """Bring one row of the image, extended by the border, into the row buffer `into`.
 
-    Each code is clamped to `clamp` where that is set, then `pedestal` is subtracted; reads
-    that the border turns into a constant get `constant`, which is used as it is.
+    Each code is clamped to `clamp` where that is set, then `pedestal` is subtracted in `work`;
+    reads that the border turns into a constant get `constant`, which is used as it is.
     """
 
     into: str
     clamp: Interval | None
     pedestal: int
     constant: int
+    work: Cell = Cell(32, True)
 
 
 @dataclass(frozen=True)
@@ -88,6 +89,7 @@ class SaturatingSum:
     """start, then the groups, of one product each, clamped to `limits` at every add.
 
     `guarded`: the cell cannot hold an unclamped sum, so the room left is compared first.
+    `acts` says which of the limits, lower and upper, a sum can pass at all.
     """
 
     start: int
@@ -95,6 +97,7 @@ class SaturatingSum:
     limits: Interval
     cell: Cell
     guarded: bool
+    acts: tuple[bool, bool] = (True, True)
 
 
 @dataclass(frozen=True)

@@ -148,7 +148,9 @@ class Harm(StrEnum):
 class Outcome:
     """What a call did: the status of each C call made, the output, and any harm.
 
-    `output` is (rows, columns, channels); cells that were not written hold UNWRITTEN. `size`
+    `output` is (rows, columns, channels); cells that were not written hold UNWRITTEN. It is
+    None where the child did not get so far, and after a call that was refused (a status that
+    is not 0) if nothing was written. `size`
     is the (rows, columns) that the routine's `output_size` gave for the call's width and
     height. `detail` holds a signal name, a place in a buffer or a sanitizer's words.
     """

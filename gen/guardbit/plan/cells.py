@@ -29,12 +29,15 @@ def fits(values: Interval, cell: Cell) -> bool:
 
 
 def work_cell(values: Iterable[Interval]) -> Cell:
-    """Return int32 or int64, the smaller that holds all intervals. Raises TooWideError."""
+    """Return the first of int32, int64 and uint64 that holds all intervals.
+
+    Arithmetic is done in no narrower type, so that C's promotions never change its meaning.
+    Raises TooWideError.
+    """
     whole = hull(values)
-    if fits(whole, INT32):
-        return INT32
-    if fits(whole, INT64):
-        return INT64
+    for cell in (INT32, INT64, UINT64):
+        if fits(whole, cell):
+            return cell
     raise TooWideError(whole)
 
 

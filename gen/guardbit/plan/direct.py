@@ -8,10 +8,9 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 from itertools import groupby
 
-from guardbit.arith.intervals import add, contains, hull, scale, shift, wrapped
-from guardbit.arith.rounding import rounding_constant
+from guardbit.arith.intervals import add, clamp_to, contains, hull, scale, shift, wrapped
 from guardbit.arith.words import clamp, container_range, container_word, format_range
-from guardbit.model.enums import BorderMode, Outside, Overflow, Preload
+from guardbit.model.enums import BorderMode, Outside, Overflow
 from guardbit.model.filter import Filter, Pass
 from guardbit.model.plan import (
     Cell,
@@ -30,14 +29,14 @@ from guardbit.model.plan import (
 from guardbit.model.sizing import Interval, RegisterSizing, Sizing
 from guardbit.plan.cells import (
     INT16,
-    INT64,
     UINT64,
     TooWideError,
     fits,
     storage_cell,
     work_cell,
 )
-from guardbit.plan.evaluate import check
+from guardbit.plan.conformity import check
+from guardbit.plan.evaluate import accumulator, room, start_value
 from guardbit.plan.tail import tail
 
 OUTPUT = "output"
@@ -54,30 +53,42 @@ class _Source:
 def direct(sizing: Sizing) -> Plan:
     """Return the direct plan of a filter, checked by the evaluator.
 
-    Codes are taken as the frame has them where every type can hold what comes of that, and
-    are clamped to the legal range on the way in otherwise. Raises TooWideError for what
-    sizing reports as unmet.
+    Codes are taken as the frame has them unless the types that this needs are wider than
+    those for legal codes; then they are clamped to the range on the way in, which is one of
+    the things that the contract lets happen to them. Raises TooWideError for what sizing
+    reports as unmet.
     """
     f = sizing.filter
     legal = Interval(f.input.low, f.input.high)
-    stored = container_range(f.input.container)
-    if f.outside is Outside.UNDEFINED:
-        try:
-            return _plan(sizing, None, stored)
-        except TooWideError:
-            return _plan(sizing, legal, legal)
-    if f.outside is Outside.CLAMP and not contains(legal, stored):
-        return _plan(sizing, legal, legal)
-    return _plan(sizing, None, legal)
+    held = container_range(f.input.container)
+    if f.outside is Outside.REJECT or contains(legal, held):
+        return _plan(sizing, None, legal)
+    clamped = _plan(sizing, legal, legal)
+    if f.outside is Outside.CLAMP:
+        return clamped
+    try:
+        plain = _plan(sizing, None, held)
+    except TooWideError:
+        return clamped
+    return clamped if _bits(clamped) < _bits(plain) else plain
+
+
+def _bits(plan: Plan) -> int:
+    """Return the widths of all types of a plan added up."""
+    return plan.word.bits + sum(
+        accumulator(step.value.of).cell.bits + step.value.work.bits for step in plan.steps
+    )
 
 
 def _plan(sizing: Sizing, clamped: Interval | None, codes: Interval) -> Plan:
+    """Return the plan for frames of these codes, after clamping."""
     f = sizing.filter
     pedestal = f.input.pedestal
     constant = f.border.value - pedestal
-    pixels = shift(codes, -pedestal)
+    loaded = shift(codes, -pedestal)
+    pixels = loaded
     if f.border.mode is BorderMode.CONSTANT:
-        pixels = hull((pixels, Interval(constant, constant)))
+        pixels = hull((loaded, Interval(constant, constant)))
     top, left, span, tap_rows = _reach(f)
     rows = _rows(f, span[0])
     steps, word = _steps(sizing, rows, pixels)
@@ -88,11 +99,11 @@ def _plan(sizing: Sizing, clamped: Interval | None, codes: Interval) -> Plan:
         left=left,
         span=span,
         tap_rows=tap_rows,
-        load=Load(rows[0].name, clamped, pedestal, constant),
+        load=Load(rows[0].name, clamped, pedestal, constant, work_cell((codes, loaded))),
         rows=rows,
         steps=steps,
     )
-    return check(plan, f)
+    return check(plan, sizing)
 
 
 def _offsets(f: Filter, axis: int) -> tuple[int, ...]:
@@ -177,8 +188,7 @@ def _widened(value: Sum | SaturatingSum) -> tuple[Group, ...]:
 def _value(source: _Source, stage: Pass, register: RegisterSizing) -> tuple[Value, Interval]:
     """Return the accumulator's arithmetic and the interval of its final value."""
     word = format_range(register.bits, register.signed)
-    preloaded = stage.accumulator.preload is Preload.ROUNDING
-    start = rounding_constant(stage.requantiser) if preloaded else 0
+    start = start_value(stage)
     terms = tuple(
         Product(t.integer, Read(source.rows, t.dy, t.dx)) for t in stage.kernel.terms if t.integer
     )
@@ -200,10 +210,13 @@ def _running(start: int, terms: Iterable[Product], pixels: Interval) -> Iterator
 
 
 def _operands(terms: Iterable[Product], pixels: Interval) -> Iterator[Interval]:
-    """Yield what each product needs: itself and its coefficient, large even if pixels are 0."""
+    """Yield what C needs to multiply: the magnitude of each coefficient, and of each product.
+
+    A negative coefficient is written as a subtraction. Pixels may be nothing but zero.
+    """
     for term in terms:
-        yield scale(pixels, term.coefficient)
-        yield Interval(term.coefficient, term.coefficient)
+        size = abs(term.coefficient)
+        yield hull((scale(pixels, size), Interval(size, size)))
 
 
 def _sum(source: _Source, start: int, terms: tuple[Product, ...]) -> tuple[Sum, Interval]:
@@ -225,28 +238,25 @@ def _groups(row: tuple[Product, ...], pixels: Interval, cell: Cell) -> tuple[Gro
 
 
 def _saturating(
-    source: _Source, start: int, terms: tuple[Product, ...], word: Interval
+    source: _Source, start: int, terms: tuple[Product, ...], limits: Interval
 ) -> tuple[SaturatingSum, Interval]:
-    begin = clamp(start, word.low, word.high)  # a register starts with what it can hold
-    limits = word if fits(word, INT64) else _reached(begin, terms, source.pixels, word)
+    total = unclamped = clamp_to(Interval(start, start), limits)
+    for term in terms:
+        free = add(total, scale(source.pixels, term.coefficient))
+        total = clamp_to(free, limits)
+        unclamped = hull((unclamped, free))
     products = hull((Interval(0, 0), *_operands(terms, source.pixels)))
+    products = hull((products, *(scale(source.pixels, t.coefficient) for t in terms)))
     try:
-        cell, guarded = work_cell((add(limits, products), source.pixels)), False
+        cell, guarded = work_cell((unclamped, products, source.pixels)), False
     except TooWideError:
-        cell, guarded = work_cell((limits, products)), True
+        cell, guarded = work_cell((limits, products, source.pixels, room(limits, products))), True
     small = INT16 if fits(products, INT16) else cell
     groups = tuple(Group((term,), small) for term in terms)
-    return SaturatingSum(begin, groups, limits, cell, guarded), limits
-
-
-def _reached(begin: int, terms: tuple[Product, ...], pixels: Interval, word: Interval) -> Interval:
-    """Return the limits of a register, less what no sum in it can reach.
-
-    An unsigned register of 64 bits has an upper limit that no signed type holds.
-    """
-    products = [scale(pixels, term.coefficient) for term in terms]
-    most = begin + sum(max(0, p.high) for p in products)
-    return Interval(word.low, min(word.high, most))
+    acts = (unclamped.low < limits.low, unclamped.high > limits.high)
+    return SaturatingSum(
+        clamp(start, limits.low, limits.high), groups, limits, cell, guarded, acts
+    ), total
 
 
 def _field(

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 from guardbit.arith.intervals import add, clamp_to, contains, hull, scale, shift, wrapped
 from guardbit.arith.rounding import rounding_constant
-from guardbit.arith.words import clamp, container_range, format_range
+from guardbit.arith.words import container_range
 from guardbit.model.enums import BorderMode, Outside, Overflow, Preload
 from guardbit.model.filter import Filter, Pass
 from guardbit.model.plan import (
@@ -19,6 +19,7 @@ from guardbit.model.plan import (
     Exact,
     Field,
     Floor,
+    Group,
     Plan,
     Quotient,
     SaturatingSum,
@@ -33,6 +34,10 @@ from guardbit.model.plan import (
 )
 from guardbit.model.sizing import Interval
 from guardbit.plan.cells import INT16, cell_range
+from guardbit.plan.replay import divide
+from guardbit.plan.tail import constants
+
+Rows = Mapping[str, Interval]
 
 
 @dataclass(frozen=True)
@@ -70,9 +75,12 @@ class PlanFaultError(Exception):
 
 
 def evaluate(plan: Plan, f: Filter) -> Evaluation:
-    """Return what a plan computes and what its types have to hold."""
-    loaded = _loaded(plan, f)
-    obligations = [Obligation("loaded pixel", loaded, plan.word)]
+    """Return what a plan computes and what its types have to hold.
+
+    Raises PlanFaultError where a number leaves what the plan says of it.
+    """
+    loaded, owed = _load(plan, f)
+    obligations = list(owed)
     rows = {plan.load.into: loaded}
     for step in plan.steps:
         stored, owed = _step(step, rows)
@@ -81,53 +89,44 @@ def evaluate(plan: Plan, f: Filter) -> Evaluation:
     return Evaluation(tuple(_form(step) for step in plan.steps), tuple(obligations))
 
 
-def check(plan: Plan, f: Filter) -> Plan:
-    """Return the plan if it computes the filter and every type is wide enough.
-
-    Raises PlanFaultError.
-    """
-    evaluation = evaluate(plan, f)
-    for step, form in zip(plan.steps, evaluation.forms, strict=True):
-        wanted = kernel_form(f.passes[step.stage])
-        if form != wanted:
-            raise PlanFaultError(f"step {step.name} sums {form}, the kernel is {wanted}")
-    for obligation in evaluation.obligations:
-        if not obligation.holds:
-            raise PlanFaultError(f"{obligation}")
-    return plan
+def accumulator(value: Value) -> Sum | SaturatingSum:
+    """Return the sum inside a value."""
+    return value.of if isinstance(value, Field) else value
 
 
-def kernel_form(stage: Pass) -> Form:
-    """Return the form that a pass's accumulator has by the contract."""
+def start_value(stage: Pass) -> int:
+    """Return what the contract adds up from: zero or the rounding constant."""
     preloaded = stage.accumulator.preload is Preload.ROUNDING
-    start = rounding_constant(stage.requantiser) if preloaded else 0
-    if stage.accumulator.overflow is Overflow.SATURATE:
-        assert stage.accumulator.bits is not None
-        limits = format_range(stage.accumulator.bits, stage.accumulator.signed)
-        start = clamp(start, limits.low, limits.high)
-    taps = Counter({(t.dy, t.dx): t.integer for t in stage.kernel.terms if t.integer})
-    return Form(start, tuple(sorted(taps.items())))
+    return rounding_constant(stage.requantiser) if preloaded else 0
 
 
-def _loaded(plan: Plan, f: Filter) -> Interval:
-    """Return what a row value can be after loading."""
+def room(limits: Interval, products: Interval) -> Interval:
+    """Return the limits and what is left of them: high - product, or low less a negative one."""
+    below = limits.high - max(products.high, 0)
+    above = limits.low - min(products.low, 0)
+    return Interval(min(limits.low, below), max(limits.high, above))
+
+
+def _load(plan: Plan, f: Filter) -> tuple[Interval, list[Obligation]]:
+    """Return what a row value can be after loading, and the obligations of loading."""
     codes = container_range(f.input.container)
     if f.outside is Outside.REJECT:
         codes = Interval(f.input.low, f.input.high)
     if plan.load.clamp is not None:
         codes = clamp_to(codes, plan.load.clamp)
-    pixels = shift(codes, -plan.load.pedestal)
+    loaded = shift(codes, -plan.load.pedestal)
+    pixels = loaded
     if f.border.mode is BorderMode.CONSTANT:
-        pixels = hull((pixels, Interval(plan.load.constant, plan.load.constant)))
-    return pixels
-
-
-def _inner(value: Value) -> Sum | SaturatingSum:
-    return value.of if isinstance(value, Field) else value
+        pixels = hull((loaded, Interval(plan.load.constant, plan.load.constant)))
+    return pixels, [
+        Obligation("code", codes, plan.load.work),
+        Obligation("code less its pedestal", loaded, plan.load.work),
+        Obligation("row value", pixels, plan.word),
+    ]
 
 
 def _form(step: Step) -> Form:
-    inner = _inner(step.value.of)
+    inner = accumulator(step.value.of)
     taps: Counter[tuple[int, int]] = Counter()
     for group in inner.groups:
         for term in group.terms:
@@ -135,57 +134,69 @@ def _form(step: Step) -> Form:
     return Form(inner.start, tuple(sorted((at, k) for at, k in taps.items() if k)))
 
 
-def _step(step: Step, rows: Mapping[str, Interval]) -> tuple[Interval, list[Obligation]]:
+def _step(step: Step, rows: Rows) -> tuple[Interval, list[Obligation]]:
     """Return what a step stores, and its obligations."""
-    inner = _inner(step.value.of)
-    owed = [Obligation(f"{step.name}: {o.what}", o.values, o.cell) for o in _sums(inner, rows)]
-    total = _total(inner, rows)
+    inner = accumulator(step.value.of)
+    total, owed = _total(inner, rows)
     if isinstance(step.value.of, Field):
         field = step.value.of
         total = wrapped(total, field.bits, field.signed)
-        owed.append(Obligation(f"{step.name}: wrapped sum", total, field.cell))
+        owed.append(Obligation("wrapped sum", total, field.cell))
     if not contains(step.value.argument, total):
         raise PlanFaultError(f"{step.name}: sums reach {total}, its tail takes them otherwise")
     stored, inside = _tail(step.value, total)
-    owed += [Obligation(f"{step.name}: {what}", values, step.value.work) for what, values in inside]
-    owed.append(Obligation(f"{step.name}: stored", stored, step.value.cell))
-    return stored, owed
+    owed += [Obligation(what, values, step.value.work) for what, values in inside]
+    owed.append(Obligation("stored", stored, step.value.cell))
+    return stored, [Obligation(f"{step.name}: {o.what}", o.values, o.cell) for o in owed]
 
 
-def _sums(value: Sum | SaturatingSum, rows: Mapping[str, Interval]) -> Iterator[Obligation]:
-    """Yield the obligations of a sum: products, groups, and the accumulator after each."""
-    if isinstance(value, Sum) and value.modular:
-        return
+def _total(value: Sum | SaturatingSum, rows: Rows) -> tuple[Interval, list[Obligation]]:
+    """Return what a sum can be at its end, and its obligations all the way."""
     total = Interval(value.start, value.start)
-    yield Obligation("start", total, value.cell)
+    owed = [Obligation("start", total, value.cell)]
     for group in value.groups:
-        part = Interval(0, 0)
-        for term in group.terms:
-            pixel = rows[term.of.rows]
-            product = scale(pixel, term.coefficient)
-            part = add(part, product)
-            yield Obligation("operand", pixel, group.cell if group.cell != INT16 else value.cell)
-            constant = Interval(term.coefficient, term.coefficient)
-            yield Obligation("coefficient", constant, group.cell)
-            yield Obligation("product", product, group.cell)
-            yield Obligation("group", part, group.cell)
+        part, inside = _group(group, value.cell, rows)
+        owed += inside
+        free = add(total, part)
         if isinstance(value, SaturatingSum):
-            if not value.guarded:
-                yield Obligation("sum before clamping", add(total, part), value.cell)
-            total = clamp_to(add(total, part), value.limits)
+            owed += _clamping(value, free, part)
+            total = clamp_to(free, value.limits)
         else:
-            total = add(total, part)
-        yield Obligation("sum", total, value.cell)
+            total = free
+        owed.append(Obligation("sum", total, value.cell))
+    return total, [] if isinstance(value, Sum) and value.modular else owed
 
 
-def _total(value: Sum | SaturatingSum, rows: Mapping[str, Interval]) -> Interval:
-    total = Interval(value.start, value.start)
-    for group in value.groups:
-        for term in group.terms:
-            total = add(total, scale(rows[term.of.rows], term.coefficient))
-        if isinstance(value, SaturatingSum):
-            total = clamp_to(total, value.limits)
-    return total
+def _group(group: Group, wide: Cell, rows: Rows) -> tuple[Interval, list[Obligation]]:
+    """Return what a group adds up to, and its obligations.
+
+    C writes a negative coefficient as a subtraction, so that the opposite of the product is
+    what has to fit as well. Operands of a 16-bit group are not cast.
+    """
+    part = Interval(0, 0)
+    owed = []
+    for term in group.terms:
+        pixel, size = rows[term.of.rows], abs(term.coefficient)
+        part = add(part, scale(pixel, term.coefficient))
+        owed += [
+            Obligation("operand", pixel, wide if group.cell == INT16 else group.cell),
+            Obligation("product", scale(pixel, term.coefficient), group.cell),
+            Obligation("product", scale(pixel, size), group.cell),
+            Obligation("coefficient", Interval(size, size), group.cell),
+            Obligation("group", part, group.cell),
+        ]
+    return part, owed
+
+
+def _clamping(value: SaturatingSum, free: Interval, product: Interval) -> Iterator[Obligation]:
+    if not value.acts[0] and free.low < value.limits.low:
+        raise PlanFaultError(f"sums reach {free}, below {value.limits}, and nothing holds them")
+    if not value.acts[1] and free.high > value.limits.high:
+        raise PlanFaultError(f"sums reach {free}, above {value.limits}, and nothing holds them")
+    if value.guarded:
+        yield Obligation("room left", room(value.limits, product), value.cell)
+    else:
+        yield Obligation("sum before clamping", free, value.cell)
 
 
 def _tail(tail: Tail, total: Interval) -> tuple[Interval, list[tuple[str, Interval]]]:
@@ -194,9 +205,12 @@ def _tail(tail: Tail, total: Interval) -> tuple[Interval, list[tuple[str, Interv
     inside, quotients = _divide(tail.quotient, n)
     code = shift(quotients, tail.offset)
     named = [("scaled sum", n), *(("dividend", v) for v in inside), ("code", code)]
+    named += [("constant", v) for v in constants(tail)]
     if tail.overflow is Overflow.WRAP:
         return shift(tail.limits, -tail.remove), named
     if tail.overflow is Overflow.SATURATE:
+        if not contains(tail.unlimited, code):
+            raise PlanFaultError(f"codes reach {code}, and only {tail.unlimited} is held")
         return clamp_to(code, tail.limits), named
     if not contains(tail.limits, code):
         raise PlanFaultError(f"codes reach {code} and nothing holds them to {tail.limits}")
@@ -204,35 +218,20 @@ def _tail(tail: Tail, total: Interval) -> tuple[Interval, list[tuple[str, Interv
 
 
 def _divide(form: Quotient, n: Interval) -> tuple[list[Interval], Interval]:
-    """Return the dividends and the quotients of a form; each is monotone in n."""
+    """Return the numbers inside a form, and the quotients, which are monotone in n."""
+    quotients = Interval(divide(form, n.low), divide(form, n.high))
     match form:
         case Exact():
-            return [], n
+            return [], quotients
         case Thresholds(up, down):
-            ends = [_beyond(v, up, down) for v in (n.low, n.high)]
-            return [], Interval(*ends)
+            return [Interval(t, t) for t in (up, down) if t is not None], quotients
         case Floor(add_, divisor, _, natural) | TiesToEven(add_, divisor, _, natural):
             dividend = shift(n, add_)
             if natural and dividend.low < 0:
                 raise PlanFaultError(f"a negative dividend {dividend} where none is expected")
-            return [dividend], Interval(*(_floored(form, v) for v in (dividend.low, dividend.high)))
+            return [dividend, Interval(divisor, divisor)], quotients
         case Truncate(divisor):
-            return [], Interval(_toward_zero(n.low, divisor), _toward_zero(n.high, divisor))
+            return [Interval(divisor, divisor)], quotients
         case TiesToAway(half, divisor):
-            moved = [v - half if v < 0 else v + half for v in (n.low, n.high)]
-            ends = [_toward_zero(v, divisor) for v in moved]
-            return [Interval(n.low - half, n.high + half)], Interval(*ends)
-
-
-def _beyond(n: int, up: int | None, down: int | None) -> int:
-    return int(up is not None and n >= up) - int(down is not None and n <= down)
-
-
-def _floored(form: Floor | TiesToEven, dividend: int) -> int:
-    """Return the quotient of a dividend; without a rest, ties to even takes the even one."""
-    quotient, rest = divmod(dividend, form.divisor)
-    return quotient - quotient % 2 if isinstance(form, TiesToEven) and not rest else quotient
-
-
-def _toward_zero(n: int, divisor: int) -> int:
-    return n // divisor if n >= 0 else -(-n // divisor)
+            moved = Interval(n.low - half, n.high + half)
+            return [moved, Interval(divisor, divisor)], quotients

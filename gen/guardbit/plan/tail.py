@@ -5,7 +5,7 @@ non-negative is added before and taken off after the division. Floor division is
 division (or a right shift), on every compiler, without a branch.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from guardbit.arith.intervals import clamp_to, contains, scale, shift, unlimited_range
 from guardbit.arith.rounding import ratio, round_ratio
@@ -24,6 +24,8 @@ from guardbit.model.plan import (
 )
 from guardbit.model.sizing import Interval
 from guardbit.plan.cells import INT64, fits, work_cell
+
+_LONGEST = 34
 
 
 @dataclass(frozen=True)
@@ -75,10 +77,15 @@ def _thresholds(d: Division) -> Thresholds:
 
 
 def _lift(d: Division, add: int, step: int) -> tuple[int, bool]:
-    """Return (multiple of `step` that makes the dividend non-negative, whether it fits)."""
+    """Return (multiple of `step` that makes the dividend non-negative, whether it fits).
+
+    Where it would not fit in 64 bits nothing is added.
+    """
     lowest = d.numerators.low + add
     lift = 0 if lowest >= 0 else -(lowest // step) * step
-    return (lift, True) if fits(shift(d.numerators, add + lift), INT64) else (0, False)
+    if lift == 0 or fits(shift(d.numerators, add + lift), INT64):
+        return lift, True
+    return 0, False
 
 
 def _floor(d: Division, add: int) -> Floor:
@@ -99,12 +106,12 @@ def _inside(d: Division, form: Quotient) -> tuple[Interval, ...]:
             return (n,)
         case Thresholds(up, down):
             return (n, *(Interval(t, t) for t in (up, down) if t is not None))
-        case Floor(add, divisor, less, _) | TiesToEven(add, divisor, less, _):
-            return (n, shift(n, add), Interval(-less, divisor))
+        case Floor(add, divisor, _, _) | TiesToEven(add, divisor, _, _):
+            return (n, shift(n, add), Interval(0, divisor))
         case Truncate(divisor):
-            return (n, Interval(-divisor, divisor))
+            return (n, Interval(0, divisor))
         case TiesToAway(half, divisor):
-            return (n, Interval(n.low - half, n.high + half), Interval(-half, divisor))
+            return (n, Interval(n.low - half, n.high + half), Interval(0, divisor))
 
 
 def tail(value: Value, argument: Interval, stage: Pass, remove: int) -> tuple[Tail, Interval]:
@@ -112,36 +119,58 @@ def tail(value: Value, argument: Interval, stage: Pass, remove: int) -> tuple[Ta
 
     Its `cell` is the work cell until the plan knows what scratch holds. Raises TooWideError.
     """
-    r = stage.requantiser
+    r = _short(stage.requantiser)
     preloaded = stage.accumulator.preload is Preload.ROUNDING
     numerator, denominator = ratio(r)
-    if argument == Interval(0, 0):
-        numerator = 1  # any power of two times nothing, of which the largest fit no C integer
     mode = Rounding.TOWARD_NEGATIVE if preloaded else r.rounding
     division = Division(scale(argument, numerator), denominator, mode)
     form = quotient(division)
-    limits = Interval(r.to.low, r.to.high)
     unlimited = unlimited_range(r, preloaded, argument)
     overflow = _overflow(r, unlimited)
     early = 0 if overflow is Overflow.WRAP else remove
     less = form.less if isinstance(form, Floor | TiesToEven) else 0
-    inside = (argument, *_inside(division, form), unlimited, limits, shift(unlimited, -remove))
-    work = work_cell(inside)
-    stored = shift(limits if overflow is Overflow.WRAP else clamp_to(unlimited, limits), -remove)
     made = Tail(
         of=value,
         multiplier=numerator,
         quotient=form,
         offset=r.to.pedestal - less - early,
         overflow=overflow,
-        limits=shift(limits, -early),
+        limits=Interval(r.to.low - early, r.to.high - early),
         remove=remove,
         argument=argument,
         unlimited=shift(unlimited, -early),
-        work=work,
-        cell=work,
+        work=INT64,
+        cell=INT64,
     )
-    return made, stored
+    work = work_cell((argument, *_inside(division, form), *constants(made), made.unlimited))
+    return replace(made, work=work, cell=work), stored(made)
+
+
+def _short(r: Requantiser) -> Requantiser:
+    """Return a requantiser that makes the same codes and shifts left by no more than it takes.
+
+    No output has more than 32 bits: beyond 34 a shift leaves only 0 in reach of the limits,
+    and a multiple of 2**32 when it wraps.
+    """
+    return replace(r, exponent=min(r.exponent, _LONGEST)) if r.divisor == 1 else r
+
+
+def constants(tail: Tail) -> tuple[Interval, ...]:
+    """Return the numbers that stand in the C of a tail, of which a dividend is none."""
+    made = [Interval(v, v) for v in (tail.multiplier, abs(tail.offset))]
+    if tail.overflow is Overflow.SATURATE:
+        if tail.unlimited.low < tail.limits.low:
+            made.append(Interval(tail.limits.low, tail.limits.low))
+        if tail.unlimited.high > tail.limits.high:
+            made.append(Interval(tail.limits.high, tail.limits.high))
+    return tuple(made)
+
+
+def stored(tail: Tail) -> Interval:
+    """Return what a tail stores."""
+    if tail.overflow is Overflow.WRAP:
+        return shift(tail.limits, -tail.remove)
+    return clamp_to(tail.unlimited, tail.limits)
 
 
 def _overflow(r: Requantiser, unlimited: Interval) -> Overflow | None:
