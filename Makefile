@@ -28,7 +28,7 @@ lint: $(BIN)/ready ## Check style, formatting and types; changes nothing.
 	$(BIN)/mypy
 
 campaign: $(BIN)/ready ## Compare C, reference, oracle and SciPy on thousands of random specs.
-	$(BIN)/python -m tests.campaign $(CAMPAIGN)
+	$(BIN)/python tests/campaign $(CAMPAIGN)
 
 coverage: $(BIN)/ready ## Measure line and branch coverage of the package by the test suite.
 	$(BIN)/python -m coverage run -m pytest tests
