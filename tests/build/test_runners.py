@@ -174,3 +174,13 @@ def test_what_is_not_executed_is_listed(compiler: str, tmp_path: Path) -> None:
     assert [gap.text for gap in coverage.gaps][:2] == ["if (w == 9) {", "d[0] = 1;"]
     assert coverage.lines - coverage.lines_run == len(coverage.gaps) - 1 <= 2
     assert {gap.file for gap in coverage.gaps} == {"turn.c"}
+
+
+def test_the_report_of_another_runtime_is_read() -> None:
+    words = (
+        "thread 485 panic: signed integer overflow: 2147483647 + 2 cannot be represented\n"
+        "lib/ubsan_rt.zig:156:20: 0x10872f8 in abort (ubsan_rt)\n"
+        "/tmp/x/turn.c:21:45: 0x102280d in turn_frame (turn.c)\n"
+    )
+    kind = "signed integer overflow: 2147483647 + 2 cannot be represented"
+    assert describe(words) == f"{kind}, turn.c line 21"

@@ -45,8 +45,11 @@ def _judge(routine: Routine, call: Call, made: Layout, data: bytes) -> Outcome:
     runs = np.frombuffer(data[RESULT.size :], np.uint8).reshape(2, -1)
     first, second = (tuple(np.frombuffer(r[:words].tobytes(), np.int64).tolist()) for r in runs)
     a, b = (_cells(routine, call, made, run[words:].tobytes()) for run in runs)
+    output: Codes | None
     output, differs, stained = _merge(a, b, routine, call)
     size = (out_height, out_width) if routine.output_size else None
+    if any(first) and not differs.any() and (output == UNWRITTEN).all():
+        output = None
     harm, detail = _harm(bits, stained, differs, first != second)
     return Outcome(first, output, size, harm, detail)
 

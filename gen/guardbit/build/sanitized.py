@@ -17,7 +17,10 @@ from guardbit.model.finding import MachineError, finding
 from guardbit.model.routine import Call, Codes, Harm, Outcome, Probe, Probed, Routine
 
 _PLAIN = ("-std=c99", "-w", "-g")
-_KIND = re.compile(r"(?:ERROR: AddressSanitizer: (?P<a>[^\n]*)|runtime error: (?P<u>[^\n]*))")
+# gcc's and clang's two sanitizers, and zig's own runtime of the second
+_KIND = re.compile(
+    r"ERROR: AddressSanitizer: (?P<a>[^\n]*)|runtime error: (?P<u>[^\n]*)|panic: (?P<z>[^\n]*)"
+)
 _PLACE = re.compile(r"([\w.+-]+\.[ch]):(\d+)")
 _ACCESS = re.compile(r"^(READ|WRITE) of size (\d+)", re.MULTILINE)
 
@@ -119,12 +122,12 @@ def describe(words: str) -> str:
     found = _KIND.search(words)
     if found is None:
         return words.strip()[:200]
-    access = _ACCESS.search(words)
-    if found["u"] is not None:
-        kind = found["u"]
-        place = _PLACE.search(words[: found.start()]) or _PLACE.search(words)
+    traced = (m for m in _PLACE.finditer(words) if not m[1].startswith("guardbit_"))
+    place = next(traced, None)
+    if found["a"] is None:
+        kind = found["u"] or found["z"]
     else:
+        access = _ACCESS.search(words)
         kind = found["a"].split(" on ")[0].strip()
         kind += f", {access[1]} of size {access[2]}" if access else ""
-        place = next((m for m in _PLACE.finditer(words) if not m[1].startswith("guardbit_")), None)
     return f"{kind}, {place[1]} line {place[2]}" if place else kind

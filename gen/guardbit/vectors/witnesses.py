@@ -8,7 +8,7 @@ from guardbit.model.sizing import RegisterSizing, Sizing, Witness
 from guardbit.model.vectors import Codes, Purpose
 from guardbit.vectors.stimuli import Stimulus
 
-MOST_PIXELS = 1 << 20
+MOST_PIXELS = 1 << 22
 
 
 @dataclass(frozen=True, eq=False)

@@ -15,7 +15,8 @@ from guardbit.verify.wording import left_out
 
 NAME = "bands"
 _MOST_FRAMES = 8
-_MOST_ROWS = 512
+_MOST_SINGLE = 256
+_LARGE = 1 << 16
 _SEED = 27_182
 
 Bands = tuple[tuple[int, int], ...]
@@ -34,14 +35,18 @@ def _chosen(bench: Bench) -> list[Vector]:
     sized: dict[int, Vector] = {}
     for vector in sorted(bench.frames, key=lambda v: not v.name.startswith("narrow")):
         rows = vector.response.output.shape[0]
-        if vector.response.output.size and rows <= _MOST_ROWS:
+        if vector.response.output.size:
             sized.setdefault(rows, vector)
-    return list(sized.values())[:_MOST_FRAMES]
+    small = [vector for vector in sized.values() if vector.frame.size <= _LARGE]
+    return small[:_MOST_FRAMES] or list(sized.values())[:1]
 
 
 def _splits(vector: Vector, rng: np.random.Generator) -> Iterator[Case]:
     rows = vector.response.output.shape[0]
-    for name, bands in _ways(rows, rng).items():
+    ways = _ways(rows, rng)
+    if vector.frame.size > _LARGE:
+        ways = {name: ways[name] for name in ("thin", "random", "empty")}
+    for name, bands in ways.items():
         for src_gap, dst_gap in ((0, 0), (1, 7)):
             call = Call(vector.frame, vector.response.output.shape[:2], bands, src_gap, dst_gap)
             label = f"{vector.name}-{name}-gaps-{src_gap}-{dst_gap}"
@@ -53,11 +58,12 @@ def _ways(rows: int, rng: np.random.Generator) -> dict[str, Bands]:
     cuts = sorted(rng.integers(0, rows, 3, endpoint=True).tolist())
     ends = [0, *cuts, rows]
     random = tuple(pairwise(ends))
-    single = tuple((row, row + 1) for row in range(rows))
+    thick = max(1, rows // _MOST_SINGLE)
+    single = tuple((row, min(row + thick, rows)) for row in range(0, rows, thick))
     middle = rows // 2
     return {
         "whole": ((0, rows),),
-        "single-rows": single,
+        "thin": single,
         "random": random,
         "backwards": tuple(reversed(single)),
         "part": ((middle, rows),),
@@ -80,7 +86,7 @@ def result(bench: Bench, trials: Trials) -> RungResult:
         ran=True,
         cases=trials.made,
         covered=(
-            f"splits of {len(heights)} output heights into whole, single, random, repeated, "
+            f"splits of {len(heights)} output heights into whole, thin, random, repeated, "
             "empty and backward bands, with gaps between rows and without",
         ),
         not_covered=left_out(left),

@@ -42,7 +42,9 @@ def from_vectors(vectors: Iterable[Vector]) -> list[Case]:
 
 
 def work(case: Case, taps: int) -> int:
-    """Return roughly how many products a case costs."""
+    """Return roughly how many products a case costs; a call that is refused costs none."""
+    if case.status is not Status.OK:
+        return 1
     rows, columns = case.call.shape
     channels = int(case.call.frame.shape[2])
     return max(1, rows * columns * channels * taps)

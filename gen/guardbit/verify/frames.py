@@ -161,23 +161,23 @@ def _modulo(values: Array) -> Array:
 def _codes_agree(filter: Filter, vectors: tuple[Vector, ...]) -> tuple[int, list[Finding]]:
     """Return how many last-pass codes were computed again, and findings."""
     which = filter.passes[-1]
-    acc = np.concatenate([v.response.accumulators[-1].ravel() for v in vectors])
-    codes = np.concatenate([v.response.output.ravel() for v in vectors])
-    if not acc.size:
-        return 0, []
-    wrong = np.flatnonzero(requantised(which, acc) != codes)
-    if not wrong.size:
-        return acc.size, []
-    value = acc[wrong[0]]
-    again = requantised(which, np.array([value]))[0]
-    return acc.size, [
-        finding(
-            "reference-differs",
-            case=f"accumulator {value}",
-            what="code",
-            row=0,
-            column=0,
-            first=str(codes[wrong[0]]),
-            second=str(again),
-        )
-    ]
+    known: dict[int, int] = {}
+    count = 0
+    for vector in vectors:
+        acc, codes = vector.response.accumulators[-1], vector.response.output
+        again = requantised(which, acc, known)
+        count += codes.size
+        if not np.array_equal(again, codes):
+            at = tuple(np.argwhere(again != codes)[0])
+            return count, [
+                finding(
+                    "reference-differs",
+                    case=vector.name,
+                    what=f"code of {acc[at]}",
+                    row=int(at[0]),
+                    column=int(at[1]),
+                    first=str(codes[at]),
+                    second=str(again[at]),
+                )
+            ]
+    return count, []

@@ -20,6 +20,7 @@ NAME = "sanitized"
 _MOST_WORK = 1 << 27
 _MOST_ARGUMENTS = 1 << 16
 _LISTED = 20
+_FULL_NAMES = {"address": "AddressSanitizer", "undefined": "UndefinedBehaviorSanitizer"}
 
 
 @dataclass(frozen=True)
@@ -81,7 +82,7 @@ def result(
     trials = run(runner, cases)
     found, failed, left = findings(bench, trials)
     given, wrong = _probed(bench, runner)
-    names = " and ".join(runner.sanitizers)
+    names = " and ".join(_FULL_NAMES[name] for name in runner.sanitizers)
     missing = () if "address" in runner.sanitizers else ("no AddressSanitizer in this compiler",)
     fewer = every - len(cases)
     return RungResult(
@@ -90,7 +91,7 @@ def result(
         cases=trials.made + given,
         covered=(
             f"{len(cases)} calls of the rungs in buffers of exact length, and {given} arguments "
-            f"of requantisers, under the {names} sanitizers",
+            f"of requantisers, under {names}",
             *_covered(counted),
         ),
         not_covered=(

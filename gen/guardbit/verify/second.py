@@ -27,11 +27,19 @@ _PAD = {
 }
 
 
-def requantised(which: Pass, acc: Array) -> Array:
-    """Return the codes of accumulator values, each distinct value computed as a scalar."""
-    values, places = np.unique(acc, return_inverse=True)
+def requantised(which: Pass, acc: Array, known: dict[int, int] | None = None) -> Array:
+    """Return the codes of accumulator values, each distinct value computed as a scalar.
+
+    `known` remembers the codes of values between calls.
+    """
+    seen = {} if known is None else known
+    distinct, places = np.unique(acc, return_inverse=True)
+    values = distinct.tolist()
     preloaded = which.accumulator.preload is Preload.ROUNDING
-    codes = [requantise(which.requantiser, preloaded, int(v)) for v in values]
+    for value in values:
+        if value not in seen:
+            seen[value] = requantise(which.requantiser, preloaded, value)
+    codes = [seen[value] for value in values]
     return np.array(codes, np.int64).reshape(-1)[places].reshape(acc.shape)
 
 
