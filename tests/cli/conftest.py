@@ -13,21 +13,6 @@ import pytest
 
 from guardbit.cli.main import status_of
 
-SOFTEN = """\
-[filter]
-name = "{name}"
-summary = "3x3 binomial"
-[kernel]
-taps = [[1, 2, 1], [2, 4, 2], [1, 2, 1]]
-divisor = 16
-[input]
-bits = 8
-[accumulator]
-bits = {bits}
-[border]
-mode = "replicate"
-"""
-
 
 @dataclass(frozen=True)
 class Ran:
@@ -37,25 +22,6 @@ class Ran:
 
 
 Guardbit = Callable[..., Ran]
-
-
-@pytest.fixture
-def soften(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
-    """Return a sound spec soften3.toml in the current folder, which is a fresh one."""
-    monkeypatch.chdir(tmp_path)
-    return write_spec("soften3")
-
-
-def write_spec(name: str, bits: str = '"auto"', file: str | None = None) -> Path:
-    path = Path(file or f"{name}.toml")
-    path.write_text(SOFTEN.format(name=name, bits=bits), encoding="utf-8")
-    return path
-
-
-@pytest.fixture
-def spec_file() -> Callable[..., Path]:
-    """Return a maker of specs in the current folder: (name, accumulator bits, file)."""
-    return write_spec
 
 
 @pytest.fixture

@@ -11,7 +11,8 @@ from guardbit.model.sizing import Interval, Sizing
 from guardbit.report.glossary import GLOSSARY, meaning
 from guardbit.report.look import Look, look_of
 from guardbit.report.terminal import emit_text, finding_line, next_line, size_text, verify_text
-from guardbit.report.text import grouped, lower, ratio, shown, signed, upper
+from guardbit.model.decimals import lower, signed, upper
+from guardbit.report.text import grouped, ratio, shown
 
 Snapshot = Callable[[str, str], None]
 PIPE = Look()

@@ -114,12 +114,12 @@ def _allowed(spec: Spec) -> Sizing:
 
 
 def _emitted(sizing: Sizing) -> "tuple[Plan, Emission]":
-    from guardbit.cli.embedded import embedded
     from guardbit.emit.emission import emit as texts
     from guardbit.plan.direct import direct
+    from guardbit.vectors.selfcheck import selfcheck
 
     plan = direct(sizing)
-    return plan, texts(sizing, plan, embedded(sizing))
+    return plan, texts(sizing, plan, selfcheck(sizing))
 
 
 def _climbed(
@@ -130,7 +130,6 @@ def _climbed(
     keep: str | Path | None,
 ) -> tuple[RungResult, ...]:
     from guardbit.build.compiler import find_compiler
-    from guardbit.cli.measured import measure
     from guardbit.files.images import read_image
     from guardbit.verify.bench import Options
     from guardbit.verify.ladder import climb
@@ -140,8 +139,7 @@ def _climbed(
         folder=Path(keep) if keep is not None else None,
     )
     found = find_compiler({**os.environ, "CC": command} if command else None)
-    rungs = climb(sizing, emission.routine, emission.probes, found, options)
-    return (*rungs, measure(sizing, options.photograph))
+    return climb(sizing, emission.routine, emission.probes, found, options)
 
 
 def _product(

@@ -6,11 +6,12 @@ from rich.table import Table
 from rich.text import Text
 
 from guardbit.model.certificate import Figure, RungResult
+from guardbit.model.decimals import lower, signed, upper
 from guardbit.model.filter import Filter
 from guardbit.model.sizing import ErrorBound
 from guardbit.report.heads import head, words
 from guardbit.report.look import STYLES, Look, drawn
-from guardbit.report.text import grouped, lower, plural, signed, upper
+from guardbit.report.text import grouped, plural
 
 _STATES = {"holds": "holds", "fails": "FAILS", "not run": "not run"}
 

@@ -1,7 +1,8 @@
-"""Numbers and foreign text as they are shown: rounded outward, and free of control characters."""
+"""Numbers and foreign text as they are shown, free of control characters."""
 
 from fractions import Fraction
 
+from guardbit.model.decimals import lower
 from guardbit.model.sizing import Interval
 
 
@@ -13,37 +14,6 @@ def shown(text: str) -> str:
 def ascii_shown(text: str) -> str:
     """Return `shown(text)` with everything outside ASCII spelt out as well."""
     return shown(text).encode("ascii", "backslashreplace").decode("ascii")
-
-
-def lower(value: Fraction, places: int = 6) -> str:
-    """Return a decimal that is at most `value`: exact if `places` digits suffice."""
-    return _decimal(_floor(value * 10**places), places)
-
-
-def upper(value: Fraction, places: int = 6) -> str:
-    """Return a decimal that is at least `value`: exact if `places` digits suffice."""
-    return _decimal(-_floor(-value * 10**places), places)
-
-
-def _floor(value: Fraction) -> int:
-    return value.numerator // value.denominator
-
-
-def _decimal(scaled: int, places: int) -> str:
-    digits = str(abs(scaled)).zfill(places + 1)
-    cut = len(digits) - places
-    body = trimmed(f"{digits[:cut]}.{digits[cut:]}")
-    return f"-{body}" if scaled < 0 else body
-
-
-def trimmed(digits: str) -> str:
-    """Return a decimal without the zeros that end its fraction."""
-    return digits.rstrip("0").rstrip(".") if "." in digits else digits
-
-
-def signed(digits: str) -> str:
-    """Return a number's digits with a plus sign if it is above zero."""
-    return digits if digits.startswith("-") or digits == "0" else f"+{digits}"
 
 
 def ratio(value: Fraction) -> str:

@@ -6,11 +6,12 @@ from fractions import Fraction
 from rich.table import Table
 from rich.text import Text
 
+from guardbit.model.decimals import lower, signed, upper
 from guardbit.model.filter import Pass, Requantiser
 from guardbit.model.sizing import ErrorBound, RegisterSizing, RequantiserSizing, Sizing
 from guardbit.report.heads import head, words
 from guardbit.report.look import Look, drawn
-from guardbit.report.text import interval, lower, plural, ratio, signed, upper
+from guardbit.report.text import interval, plural, ratio
 
 _LABELS = 22
 _BAR = 24

@@ -16,7 +16,7 @@ from guardbit.model.certificate import Figure, RungResult
 from guardbit.model.finding import GuardbitError, MachineError
 from guardbit.model.routine import Probe, Routine
 from guardbit.model.sizing import Sizing
-from guardbit.verify import bands, calls, frames, impulses, requantiser, sanitized
+from guardbit.verify import bands, calls, error, frames, impulses, requantiser, sanitized
 from guardbit.verify import witnesses as witnessing
 from guardbit.verify.bench import Bench, Options, prepare, run
 from guardbit.verify.cases import Case, work
@@ -26,7 +26,7 @@ __all__ = ["Options", "climb"]
 
 BUILD = "build"
 _COMPARED = (impulses, witnessing, frames, bands, calls)
-_AFTER = (*(rung.NAME for rung in _COMPARED), requantiser.NAME, sanitized.NAME)
+_AFTER = (*(rung.NAME for rung in _COMPARED), requantiser.NAME, sanitized.NAME, error.NAME)
 
 _T = TypeVar("_T")
 
@@ -102,8 +102,8 @@ def _start(pool: ThreadPoolExecutor, order: _Order, folder: Path) -> _Builds:
 def _tried(work: Callable[[], _T]) -> _T | GuardbitError:
     try:
         return work()
-    except GuardbitError as error:
-        return error
+    except GuardbitError as ended:
+        return ended
 
 
 def _climb(
@@ -137,7 +137,8 @@ def _climb(
     running = [(rung, pool.submit(run, host, cases[rung.NAME])) for rung in _COMPARED]
     compared = [rung.result(bench, trials.result()) for rung, trials in running]
     tail = requantiser.result(bench, host)
-    return (_built(compiler, bench.routine), *compared, tail, checked.result())
+    far = error.result(bench.sizing, bench.frames)
+    return (_built(compiler, bench.routine), *compared, tail, checked.result(), far)
 
 
 def _patience(bench: Bench, cases: Sequence[Case]) -> float:
@@ -172,11 +173,11 @@ def _built(compiler: Compiler, routine: Routine) -> RungResult:
 
 
 def _not_built(
-    compiler: Compiler, routine: Routine, error: GuardbitError
+    compiler: Compiler, routine: Routine, ended: GuardbitError
 ) -> tuple[RungResult, ...]:
     """Return a build rung with the compiler's messages, and the others as not run."""
-    if isinstance(error, MachineError) or not isinstance(error, BuildError):
-        raise error
-    build = RungResult(BUILD, True, 1, (), (f"compiled with {compiler.label}",), (), error.findings)
+    if isinstance(ended, MachineError) or not isinstance(ended, BuildError):
+        raise ended
+    build = RungResult(BUILD, True, 1, (), (f"compiled with {compiler.label}",), (), ended.findings)
     why = ("the C does not compile",)
     return (build, *(RungResult(name, False, 0, (), why, (), ()) for name in _AFTER))

@@ -4,10 +4,10 @@ import numpy as np
 import pytest
 
 from guardbit.cli import api
-from guardbit.cli.embedded import embedded, noise
 from guardbit.model.finding import SpecError
 from guardbit.model.sizing import Sizing
 from guardbit.reference.run import respond
+from guardbit.vectors.selfcheck import noise, selfcheck
 
 KERNEL = "[kernel]\ntaps = [[1, 2, 1], [2, 4, 2], [1, 2, 1]]\ndivisor = 16\n[input]\nbits = 8\n"
 
@@ -20,7 +20,7 @@ def sized(image: str) -> Sizing:
 
 def test_frames_are_few_and_reach_the_worst_cases(soften: Path) -> None:
     sizing = api.size(soften)
-    vectors = embedded(sizing)
+    vectors = selfcheck(sizing)
     assert sum(v.frame.size for v in vectors) < 3 * 4096
     sums = np.concatenate([v.response.accumulators[-1].ravel() for v in vectors])
     register = sizing.registers[0]
@@ -37,12 +37,12 @@ def test_noise_is_the_published_generator(soften: Path) -> None:
 
 @pytest.mark.usefixtures("soften")
 def test_large_images_only() -> None:
-    vectors = embedded(sized("width = [320, 640]\nheight = [240, 480]"))
+    vectors = selfcheck(sized("width = [320, 640]\nheight = [240, 480]"))
     assert [v.frame.shape for v in vectors] == [(240, 320, 1)]
 
 
 @pytest.mark.usefixtures("soften")
 def test_images_that_no_program_can_carry() -> None:
     with pytest.raises(SpecError) as caught:
-        embedded(sized("width = [65535, 65535]\nheight = [65535, 65535]"))
+        selfcheck(sized("width = [65535, 65535]\nheight = [65535, 65535]"))
     assert [found.kind for found in caught.value.findings] == ["selfcheck-too-large"]

@@ -12,14 +12,13 @@ from math import lcm
 import numpy as np
 
 from guardbit.model.certificate import Figure, RungResult
+from guardbit.model.decimals import lower, signed, upper
 from guardbit.model.enums import Overflow, Preload, Scale
 from guardbit.model.filter import Accumulator, Filter, Kernel, Term
 from guardbit.model.finding import Finding, finding
 from guardbit.model.sizing import Sizing
 from guardbit.model.vectors import Codes, Vector
 from guardbit.reference.run import respond
-from guardbit.report.text import lower, signed, upper
-from guardbit.vectors.stimuli import answered, stimuli
 
 NAME = "error"
 # Products of one frame: sums of fifty digits are slow.
@@ -36,16 +35,16 @@ class Span:
     outputs: int
 
 
-def measure(sizing: Sizing, photograph: Codes | None = None) -> RungResult:
-    """Return the largest error over structured and random frames, held against the bound.
+def result(sizing: Sizing, vectors: Sequence[Vector]) -> RungResult:
+    """Return the largest error of the vectors, held against the bound.
 
     The bound is a claim about all legal frames: one that goes beyond it is a finding.
     """
     filter_ = sizing.filter
-    chosen = [s for s in stimuli(filter_, photograph) if _legal(filter_, s.frame)]
+    chosen = [v for v in vectors if _legal(filter_, v.frame)]
     taps = len(_ideal_terms(filter_))
-    small = [s for s in chosen if s.frame.size * taps <= _MOST_WORK]
-    spans = _spans(filter_, answered(filter_, small))
+    small = [v for v in chosen if v.frame.size * taps <= _MOST_WORK]
+    spans = _spans(filter_, small)
     findings = () if sizing.error.assumes_no_wrap else tuple(_beyond(sizing, spans))
     skipped = len(chosen) - len(small)
     return RungResult(

@@ -6,9 +6,14 @@ from pathlib import Path
 import pytest
 
 from guardbit.cli import api
-from guardbit.cli.measured import measure
+from guardbit.model.certificate import RungResult
 from guardbit.model.sizing import Sizing
-from guardbit.vectors.stimuli import stimuli
+from guardbit.vectors.stimuli import answered, stimuli
+from guardbit.verify.error import result
+
+
+def measure(sizing: Sizing) -> RungResult:
+    return result(sizing, answered(sizing.filter, stimuli(sizing.filter)))
 
 
 def sized(tables: str) -> Sizing:

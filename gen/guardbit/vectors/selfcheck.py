@@ -22,7 +22,7 @@ _MOST_WITNESSES = 8
 _MULTIPLIER, _INCREMENT = 1664525, 1013904223
 
 
-def embedded(sizing: Sizing) -> tuple[Vector, ...]:
+def selfcheck(sizing: Sizing) -> tuple[Vector, ...]:
     """Return the vectors of the self-check, of at most a few thousand codes each.
 
     Noise over the whole range and around the level at which outputs do not saturate, the
@@ -67,7 +67,7 @@ def _codes(filter_: Filter, shape: tuple[int, int]) -> int:
 
 
 def noise(filter_: Filter, shape: tuple[int, int], low: int, high: int, seed: int) -> Codes:
-    """Return (height, width, channels) of codes in low..high,."""
+    """Return (height, width, channels) of codes in low..high."""
     state, codes = seed, []
     for _ in range(_codes(filter_, shape)):
         state = (state * _MULTIPLIER + _INCREMENT) % 2**32
