@@ -36,6 +36,7 @@ coverage: $(BIN)/ready ## Measure line and branch coverage of the package by the
 	$(BIN)/python -m coverage report
 
 accept-examples: $(BIN)/ready ## Write the C of the examples again, after a change that is meant.
+	rm -rf examples/c
 	$(BIN)/guardbit emit examples/*.toml -o examples/c --force
 
 clean: ## Remove the virtual environment and everything that was made here.

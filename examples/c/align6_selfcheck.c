@@ -1,22 +1,28 @@
-/* align6_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* align6_selfcheck.c - checks the filter on the part itself
  *
  * Half-pixel shift, six taps, two passes with 8 bits in between
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * 2377bc762dc7a96b0fa82494f6eb226793cdee3367bdff59a4e7e42d6930fc24.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "align6.h"
 
-/* Define ALIGN6_SELFCHECK_STDIO to print each mismatch,
- * and ALIGN6_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if ALIGN6_EDITION != 0xd052ddc6
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * ALIGN6_SELFCHECK_STDIO: print each mismatch
+ * ALIGN6_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef ALIGN6_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int align6_selfcheck(void);
+long align6_selfcheck(void);
 
 /* noise: 24 x 24, random */
 static const uint8_t source_1[576] = {
@@ -238,14 +244,16 @@ static const uint8_t expected_11[36] = {
     135, 96, 135, 134, 96, 133, 134, 102, 134, 133, 102, 96, 88, 255, 88, 96, 255
 };
 
-static const struct {
+struct vector {
     const uint8_t *source;
-    const uint8_t *expected;
+    const uint8_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 24, 24, 24, 24 },
     { source_2, expected_2, 24, 24, 24, 24 },
     { source_3, expected_3, 1, 1, 1, 1 },
@@ -256,21 +264,20 @@ static const struct {
     { source_8, expected_8, 6, 6, 6, 6 },
     { source_9, expected_9, 6, 6, 6, 6 },
     { source_10, expected_10, 6, 6, 6, 6 },
-    { source_11, expected_11, 6, 6, 6, 6 },
+    { source_11, expected_11, 6, 6, 6, 6 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static uint8_t output[576];
     static align6_word scratch[ALIGN6_SCRATCH_LEN(24)];
-    const size_t elements = vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = align6_frame(vectors[number].source, vectors[number].width,
-        output, vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
+    status = align6_frame(v->source, v->width, output, v->out_width, v->width, v->height,
         scratch, sizeof scratch / sizeof *scratch);
     if (status != ALIGN6_OK) {
 #ifdef ALIGN6_SELFCHECK_STDIO
@@ -279,10 +286,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef ALIGN6_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -290,9 +297,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int align6_selfcheck(void)
+long align6_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -304,6 +311,6 @@ int align6_selfcheck(void)
 #ifndef ALIGN6_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return align6_selfcheck() == 0 ? 0 : 1;
+    return align6_selfcheck() != 0;
 }
 #endif

@@ -2,12 +2,16 @@
  *
  * Defocus of the label camera, as measured on the bench
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * cef47fe35187c0c690974c1d57e4edd74b81c44e34fa98a8ad9dfd1ceb77114a.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "label_psf.h"
+
+#if LABEL_PSF_EDITION != 0x453e15c6
+#error "these files were not emitted together"
+#endif
 
 /* Fill `row` with row e - 2 of the source, columns -2 to width + 1, extended by the border. */
 static void label_psf_load(const uint8_t *src, size_t src_stride, size_t width, size_t height,
@@ -45,18 +49,27 @@ static uint8_t label_psf_requantise(int32_t acc)
     return (uint8_t)code;
 }
 
-/* Compute one output row from the ring; e is the extended row that its top tap reads. */
-static void label_psf_row(const label_psf_word *ring, size_t pitch, uint32_t e, size_t count,
+/* Compute one output row. `top` is the extended row that the uppermost tap reads.
+ *
+ * Coefficients of the pixels about the output, rows -2 to 2, columns -2 to 2:
+ *    1    9   12    9    1
+ *   10   15   14   13    8
+ *   14   15   14   13   11
+ *   11   15   14   14    9
+ *    1   10   13    9    1
+ */
+static void label_psf_row(const label_psf_word *ring, size_t pitch, uint32_t top, size_t count,
     uint8_t *LABEL_PSF_RESTRICT dst)
 {
-    const label_psf_word *const r0 = ring + (size_t)(e % 5) * pitch;
-    const label_psf_word *const r1 = ring + (size_t)((e + 1) % 5) * pitch;
-    const label_psf_word *const r2 = ring + (size_t)((e + 2) % 5) * pitch;
-    const label_psf_word *const r3 = ring + (size_t)((e + 3) % 5) * pitch;
-    const label_psf_word *const r4 = ring + (size_t)((e + 4) % 5) * pitch;
+    const label_psf_word *const r0 = ring + (size_t)(top % 5) * pitch;
+    const label_psf_word *const r1 = ring + (size_t)((top + 1) % 5) * pitch;
+    const label_psf_word *const r2 = ring + (size_t)((top + 2) % 5) * pitch;
+    const label_psf_word *const r3 = ring + (size_t)((top + 3) % 5) * pitch;
+    const label_psf_word *const r4 = ring + (size_t)((top + 4) % 5) * pitch;
     size_t i;
 
     for (i = 0; i < count; i++) {
+        /* 128 to 65408 at the end, for legal codes */
         int32_t acc = 128;
 
         acc += r0[i] + 9 * r0[i + 1] + 12 * r0[i + 2] + 9 * r0[i + 3] + r0[i + 4];
@@ -71,34 +84,38 @@ static void label_psf_row(const label_psf_word *ring, size_t pitch, uint32_t e, 
     }
 }
 
-/* Tell the size of the output, and whether the size of the source is legal; 0 if it is not. */
-static int label_psf_sizes(size_t width, size_t height, uint32_t *out_columns,
-    uint32_t *out_rows)
+/* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
+static int label_psf_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    const int is_legal = width - 1 <= 65534 && height - 1 <= 65534;
+    uint32_t columns;
+    uint32_t rows;
 
-    *out_columns = is_legal ? (uint32_t)width : 0;
-    *out_rows = is_legal ? (uint32_t)height : 0;
-    return is_legal;
+    *out_width = 0;
+    *out_height = 0;
+    /* a size below the least wraps round */
+    if (width - 1u > 65534u || height - 1u > 65534u) {
+        return 0;
+    }
+    columns = (uint32_t)width;
+    rows = (uint32_t)height;
+    *out_width = (size_t)columns;
+    *out_height = (size_t)rows;
+    return 1;
 }
 
 void label_psf_output_size(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t out_columns;
-    uint32_t out_rows;
-    const int is_legal = label_psf_sizes(width, height, &out_columns, &out_rows);
-
-    *out_width = is_legal ? (size_t)out_columns : 0;
-    *out_height = is_legal ? (size_t)out_rows : 0;
+    (void)label_psf_sizes(width, height, out_width, out_height);
 }
 
-int label_psf_band(const uint8_t *LABEL_PSF_RESTRICT src, size_t src_stride,
+int label_psf_band(
+    const uint8_t *LABEL_PSF_RESTRICT src, size_t src_stride,
     uint8_t *LABEL_PSF_RESTRICT dst, size_t dst_stride,
     size_t width, size_t height, size_t from, size_t to,
     label_psf_word *LABEL_PSF_RESTRICT scratch, size_t scratch_len)
 {
-    uint32_t out_columns;
-    uint32_t out_rows;
+    size_t out_width;
+    size_t out_height;
     uint32_t next = 0;
     size_t pitch;
     size_t row;
@@ -106,37 +123,39 @@ int label_psf_band(const uint8_t *LABEL_PSF_RESTRICT src, size_t src_stride,
     if (src == NULL || dst == NULL || scratch == NULL) {
         return LABEL_PSF_BAD_POINTER;
     }
-    if (!label_psf_sizes(width, height, &out_columns, &out_rows)
-        || from > to || to > out_rows) {
+    if (!label_psf_sizes(width, height, &out_width, &out_height)
+        || from > to || to > out_height) {
         return LABEL_PSF_BAD_SIZE;
     }
-    if (src_stride < width || dst_stride < out_columns) {
+    if (src_stride < width || dst_stride < out_width) {
         return LABEL_PSF_BAD_STRIDE;
     }
     if (from == to) {
         return LABEL_PSF_OK;
     }
-    /* the width is extended in 32 bits, which size_t may not have */
+    /* the extended width takes more bits than size_t may have */
     if (scratch_len / 5 < (uint32_t)width + 4) {
         return LABEL_PSF_BAD_SCRATCH;
     }
     pitch = width + 4;
     for (row = from; row < to; row++) {
-        const uint32_t e = (uint32_t)row;
+        const uint32_t top = (uint32_t)row;
 
-        if (next < e) {
-            next = e;
+        /* rows that two output rows read are still in the ring */
+        if (next < top) {
+            next = top;
         }
-        for (; next < e + 5; next++) {
+        for (; next < top + 5; next++) {
             label_psf_load(src, src_stride, width, height, next,
                 scratch + (size_t)(next % 5) * pitch);
         }
-        label_psf_row(scratch, pitch, e, out_columns, dst + (row - from) * dst_stride);
+        label_psf_row(scratch, pitch, top, out_width, dst + (row - from) * dst_stride);
     }
     return LABEL_PSF_OK;
 }
 
-int label_psf_frame(const uint8_t *LABEL_PSF_RESTRICT src, size_t src_stride,
+int label_psf_frame(
+    const uint8_t *LABEL_PSF_RESTRICT src, size_t src_stride,
     uint8_t *LABEL_PSF_RESTRICT dst, size_t dst_stride,
     size_t width, size_t height,
     label_psf_word *LABEL_PSF_RESTRICT scratch, size_t scratch_len)

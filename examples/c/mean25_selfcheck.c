@@ -1,22 +1,28 @@
-/* mean25_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* mean25_selfcheck.c - checks the filter on the part itself
  *
  * Mean of 5x5 pixels, divided by exactly 25
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * 1c90915922cd9e0bd6d3185d831b610a834a98897b9302dab22abd2cdff93bf8.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "mean25.h"
 
-/* Define MEAN25_SELFCHECK_STDIO to print each mismatch,
- * and MEAN25_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if MEAN25_EDITION != 0x6bc72830
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * MEAN25_SELFCHECK_STDIO: print each mismatch
+ * MEAN25_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef MEAN25_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int mean25_selfcheck(void);
+long mean25_selfcheck(void);
 
 /* noise: 24 x 24, random */
 static const uint8_t source_1[576] = {
@@ -199,35 +205,36 @@ static const uint8_t expected_7[25] = {
     250, 247, 245, 247, 249, 247, 245
 };
 
-static const struct {
+struct vector {
     const uint8_t *source;
-    const uint8_t *expected;
+    const uint8_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 24, 24, 24, 24 },
     { source_2, expected_2, 24, 24, 24, 24 },
     { source_3, expected_3, 1, 1, 1, 1 },
     { source_4, expected_4, 5, 5, 5, 5 },
     { source_5, expected_5, 5, 5, 5, 5 },
     { source_6, expected_6, 5, 5, 5, 5 },
-    { source_7, expected_7, 5, 5, 5, 5 },
+    { source_7, expected_7, 5, 5, 5, 5 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static uint8_t output[576];
     static mean25_word scratch[MEAN25_SCRATCH_LEN(24)];
-    const size_t elements = vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = mean25_frame(vectors[number].source, vectors[number].width,
-        output, vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
+    status = mean25_frame(v->source, v->width, output, v->out_width, v->width, v->height,
         scratch, sizeof scratch / sizeof *scratch);
     if (status != MEAN25_OK) {
 #ifdef MEAN25_SELFCHECK_STDIO
@@ -236,10 +243,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef MEAN25_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -247,9 +254,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int mean25_selfcheck(void)
+long mean25_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -261,6 +268,6 @@ int mean25_selfcheck(void)
 #ifndef MEAN25_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return mean25_selfcheck() == 0 ? 0 : 1;
+    return mean25_selfcheck() != 0;
 }
 #endif

@@ -1,22 +1,28 @@
-/* mosaic_green_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* mosaic_green_selfcheck.c - checks the filter on the part itself
  *
  * Green pixels of the red rows, smoothed among themselves, half size
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * 5a59fc62c55c15c11b3898a33fed589f6d6877e47145ef60fc9d50c0d8f26b44.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "mosaic_green.h"
 
-/* Define MOSAIC_GREEN_SELFCHECK_STDIO to print each mismatch,
- * and MOSAIC_GREEN_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if MOSAIC_GREEN_EDITION != 0x0c957d06
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * MOSAIC_GREEN_SELFCHECK_STDIO: print each mismatch
+ * MOSAIC_GREEN_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef MOSAIC_GREEN_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int mosaic_green_selfcheck(void);
+long mosaic_green_selfcheck(void);
 
 /* noise: 24 x 24, random */
 static const uint16_t source_1[576] = {
@@ -158,35 +164,36 @@ static const uint16_t expected_7[9] = {
     4092, 4092, 4092, 4092, 4092, 4092, 4092, 4092, 4092
 };
 
-static const struct {
+struct vector {
     const uint16_t *source;
-    const uint16_t *expected;
+    const uint16_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 24, 24, 12, 12 },
     { source_2, expected_2, 24, 24, 12, 12 },
     { source_3, expected_3, 4, 4, 2, 2 },
     { source_4, expected_4, 6, 5, 3, 3 },
     { source_5, expected_5, 6, 5, 3, 3 },
     { source_6, expected_6, 6, 5, 3, 3 },
-    { source_7, expected_7, 6, 5, 3, 3 },
+    { source_7, expected_7, 6, 5, 3, 3 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static uint16_t output[144];
     static mosaic_green_word scratch[MOSAIC_GREEN_SCRATCH_LEN(24)];
-    const size_t elements = vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = mosaic_green_frame(vectors[number].source, vectors[number].width,
-        output, vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
+    status = mosaic_green_frame(v->source, v->width, output, v->out_width, v->width, v->height,
         scratch, sizeof scratch / sizeof *scratch);
     if (status != MOSAIC_GREEN_OK) {
 #ifdef MOSAIC_GREEN_SELFCHECK_STDIO
@@ -195,10 +202,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef MOSAIC_GREEN_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -206,9 +213,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int mosaic_green_selfcheck(void)
+long mosaic_green_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -220,6 +227,6 @@ int mosaic_green_selfcheck(void)
 #ifndef MOSAIC_GREEN_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return mosaic_green_selfcheck() == 0 ? 0 : 1;
+    return mosaic_green_selfcheck() != 0;
 }
 #endif

@@ -2,27 +2,33 @@
  *
  * Thin upright lines on the unrolled bottle, 16-bit saturating sum
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * cfa3a7d029d53fe0b6b4894359b6558f478ee24392532886eafb3850a3b259ff.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "seam.h"
 
-/* Index of the pixel that position `at` of an axis reads: the image repeats. */
+#if SEAM_EDITION != 0x37cae782
+#error "these files were not emitted together"
+#endif
+
+/* Index of the pixel that position `at` of an axis reads: the image again and again. */
 static int32_t seam_index(int32_t at, int32_t length)
 {
     const int32_t period = length;
     const int32_t rest = at % period;
+    const int32_t phase = rest < 0 ? rest + period : rest;
 
-    return rest < 0 ? rest + period : rest;
+    return phase;
 }
 
 /* Fill `row` with row e of the source, columns -4 to width + 3, extended by the border. */
 static void seam_load(const uint8_t *src, size_t src_stride, size_t width, uint32_t e,
     seam_word *SEAM_RESTRICT row)
 {
-    const uint8_t *const line = src + (size_t)e * src_stride;
+    const int32_t y = (int32_t)e;
+    const uint8_t *const line = src + (size_t)y * src_stride;
     const int32_t columns = (int32_t)width + 8;
     int32_t x;
 
@@ -45,7 +51,10 @@ static int32_t seam_add(int32_t acc, int32_t product)
     if (sum < -32768) {
         return -32768;
     }
-    return sum > 32767 ? 32767 : sum;
+    if (sum > 32767) {
+        return 32767;
+    }
+    return sum;
 }
 
 /* acc / 2^8, rounded toward zero, held to -128 to 127. acc is -32768 to 32767, so that no
@@ -57,12 +66,18 @@ static int8_t seam_requantise(int32_t acc)
     return (int8_t)code;
 }
 
-/* Compute one output row from the ring; e is the extended row that its top tap reads. */
+/* Compute one output row. `top` is the extended row that the uppermost tap reads.
+ *
+ * Coefficients of the pixels about the output, row 0, columns -4 to 4:
+ *   -43   -43   -43    86    86    86   -43   -43   -43
+ */
 static void seam_row(const seam_word *r0, size_t count, int8_t *SEAM_RESTRICT dst)
 {
     size_t i;
 
     for (i = 0; i < count; i++) {
+        /* -65790 to 65790 at the end; the register holds -32768 to 32767 of it, for legal
+         * codes */
         int32_t acc = 0;
 
         acc = seam_add(acc, -43 * r0[i]);
@@ -78,69 +93,74 @@ static void seam_row(const seam_word *r0, size_t count, int8_t *SEAM_RESTRICT ds
     }
 }
 
-/* Tell the size of the output, and whether the size of the source is legal; 0 if it is not. */
-static int seam_sizes(size_t width, size_t height, uint32_t *out_columns, uint32_t *out_rows)
+/* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
+static int seam_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    const int is_legal = width - 64 <= 4032 && height - 1 <= 65534;
+    uint32_t columns;
+    uint32_t rows;
 
-    *out_columns = is_legal ? (uint32_t)width : 0;
-    *out_rows = is_legal ? (uint32_t)height : 0;
-    return is_legal;
+    *out_width = 0;
+    *out_height = 0;
+    /* a size below the least wraps round */
+    if (width - 64u > 4032u || height - 1u > 65534u) {
+        return 0;
+    }
+    columns = (uint32_t)width;
+    rows = (uint32_t)height;
+    *out_width = (size_t)columns;
+    *out_height = (size_t)rows;
+    return 1;
 }
 
 void seam_output_size(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t out_columns;
-    uint32_t out_rows;
-    const int is_legal = seam_sizes(width, height, &out_columns, &out_rows);
-
-    *out_width = is_legal ? (size_t)out_columns : 0;
-    *out_height = is_legal ? (size_t)out_rows : 0;
+    (void)seam_sizes(width, height, out_width, out_height);
 }
 
-int seam_band(const uint8_t *SEAM_RESTRICT src, size_t src_stride,
+int seam_band(
+    const uint8_t *SEAM_RESTRICT src, size_t src_stride,
     int8_t *SEAM_RESTRICT dst, size_t dst_stride,
     size_t width, size_t height, size_t from, size_t to,
     seam_word *SEAM_RESTRICT scratch, size_t scratch_len)
 {
-    uint32_t out_columns;
-    uint32_t out_rows;
+    size_t out_width;
+    size_t out_height;
     uint32_t next = 0;
     size_t row;
 
     if (src == NULL || dst == NULL || scratch == NULL) {
         return SEAM_BAD_POINTER;
     }
-    if (!seam_sizes(width, height, &out_columns, &out_rows)
-        || from > to || to > out_rows) {
+    if (!seam_sizes(width, height, &out_width, &out_height)
+        || from > to || to > out_height) {
         return SEAM_BAD_SIZE;
     }
-    if (src_stride < width || dst_stride < out_columns) {
+    if (src_stride < width || dst_stride < out_width) {
         return SEAM_BAD_STRIDE;
     }
     if (from == to) {
         return SEAM_OK;
     }
-    /* the width is extended in 32 bits, which size_t may not have */
+    /* the extended width takes more bits than size_t may have */
     if (scratch_len < (uint32_t)width + 8) {
         return SEAM_BAD_SCRATCH;
     }
     for (row = from; row < to; row++) {
-        const uint32_t e = (uint32_t)row;
+        const uint32_t top = (uint32_t)row;
 
-        if (next < e) {
-            next = e;
+        if (next < top) {
+            next = top;
         }
-        for (; next < e + 1; next++) {
-            seam_load(src, src_stride, width, next,
-                scratch);
+        for (; next < top + 1; next++) {
+            seam_load(src, src_stride, width, next, scratch);
         }
-        seam_row(scratch, out_columns, dst + (row - from) * dst_stride);
+        seam_row(scratch, out_width, dst + (row - from) * dst_stride);
     }
     return SEAM_OK;
 }
 
-int seam_frame(const uint8_t *SEAM_RESTRICT src, size_t src_stride,
+int seam_frame(
+    const uint8_t *SEAM_RESTRICT src, size_t src_stride,
     int8_t *SEAM_RESTRICT dst, size_t dst_stride,
     size_t width, size_t height,
     seam_word *SEAM_RESTRICT scratch, size_t scratch_len)
@@ -149,6 +169,6 @@ int seam_frame(const uint8_t *SEAM_RESTRICT src, size_t src_stride,
     size_t out_height;
 
     seam_output_size(width, height, &out_width, &out_height);
-    return seam_band(src, src_stride, dst, dst_stride, width, height, 0, out_height,
-        scratch, scratch_len);
+    return seam_band(src, src_stride, dst, dst_stride, width, height, 0, out_height, scratch,
+        scratch_len);
 }

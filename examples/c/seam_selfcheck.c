@@ -1,22 +1,28 @@
-/* seam_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* seam_selfcheck.c - checks the filter on the part itself
  *
  * Thin upright lines on the unrolled bottle, 16-bit saturating sum
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * cfa3a7d029d53fe0b6b4894359b6558f478ee24392532886eafb3850a3b259ff.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "seam.h"
 
-/* Define SEAM_SELFCHECK_STDIO to print each mismatch,
- * and SEAM_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if SEAM_EDITION != 0x37cae782
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * SEAM_SELFCHECK_STDIO: print each mismatch
+ * SEAM_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef SEAM_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int seam_selfcheck(void);
+long seam_selfcheck(void);
 
 /* noise: 64 x 24, random */
 static const uint8_t source_1[1536] = {
@@ -393,36 +399,37 @@ static const int8_t expected_7[64] = {
     0, 0, 0, 0, 0, 0, 0, -42
 };
 
-static const struct {
+struct vector {
     const uint8_t *source;
-    const int8_t *expected;
+    const int8_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 64, 24, 64, 24 },
     { source_2, expected_2, 64, 24, 64, 24 },
     { source_3, expected_3, 64, 1, 64, 1 },
     { source_4, expected_4, 64, 1, 64, 1 },
     { source_5, expected_5, 64, 1, 64, 1 },
     { source_6, expected_6, 64, 1, 64, 1 },
-    { source_7, expected_7, 64, 1, 64, 1 },
+    { source_7, expected_7, 64, 1, 64, 1 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static int8_t output[1536];
     static seam_word scratch[SEAM_SCRATCH_LEN(64)];
-    const size_t elements = vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = seam_frame(vectors[number].source, vectors[number].width,
-        output, vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
-        scratch, sizeof scratch / sizeof *scratch);
+    status = seam_frame(v->source, v->width, output, v->out_width, v->width, v->height, scratch,
+        sizeof scratch / sizeof *scratch);
     if (status != SEAM_OK) {
 #ifdef SEAM_SELFCHECK_STDIO
         printf("vector %lu: status %d\n", (unsigned long)number, status);
@@ -430,10 +437,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef SEAM_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -441,9 +448,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int seam_selfcheck(void)
+long seam_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -455,6 +462,6 @@ int seam_selfcheck(void)
 #ifndef SEAM_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return seam_selfcheck() == 0 ? 0 : 1;
+    return seam_selfcheck() != 0;
 }
 #endif

@@ -1,22 +1,28 @@
-/* sharpen_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* sharpen_selfcheck.c - checks the filter on the part itself
  *
  * 3x3 sharpening of the panel picture, video levels
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * f688876ce4a61ca45771a5e6d465c843249ba559622563465b2daae7ccac771f.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "sharpen.h"
 
-/* Define SHARPEN_SELFCHECK_STDIO to print each mismatch,
- * and SHARPEN_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if SHARPEN_EDITION != 0x23fb6697
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * SHARPEN_SELFCHECK_STDIO: print each mismatch
+ * SHARPEN_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef SHARPEN_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int sharpen_selfcheck(void);
+long sharpen_selfcheck(void);
 
 /* noise: 24 x 24, random */
 static const uint8_t source_1[1728] = {
@@ -766,36 +772,37 @@ static const uint8_t expected_7[768] = {
     16, 16, 16, 16, 16, 16, 16, 16, 16, 16
 };
 
-static const struct {
+struct vector {
     const uint8_t *source;
-    const uint8_t *expected;
+    const uint8_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 24, 24, 24, 24 },
     { source_2, expected_2, 24, 24, 24, 24 },
     { source_3, expected_3, 16, 16, 16, 16 },
     { source_4, expected_4, 16, 16, 16, 16 },
     { source_5, expected_5, 16, 16, 16, 16 },
     { source_6, expected_6, 16, 16, 16, 16 },
-    { source_7, expected_7, 16, 16, 16, 16 },
+    { source_7, expected_7, 16, 16, 16, 16 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static uint8_t output[1728];
     static sharpen_word scratch[SHARPEN_SCRATCH_LEN(24)];
-    const size_t elements = 3 * vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = 3 * v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = sharpen_frame(vectors[number].source, 3 * vectors[number].width,
-        output, 3 * vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
-        scratch, sizeof scratch / sizeof *scratch);
+    status = sharpen_frame(v->source, 3 * v->width, output, 3 * v->out_width, v->width,
+        v->height, scratch, sizeof scratch / sizeof *scratch);
     if (status != SHARPEN_OK) {
 #ifdef SHARPEN_SELFCHECK_STDIO
         printf("vector %lu: status %d\n", (unsigned long)number, status);
@@ -803,10 +810,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef SHARPEN_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -814,9 +821,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int sharpen_selfcheck(void)
+long sharpen_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -828,6 +835,6 @@ int sharpen_selfcheck(void)
 #ifndef SHARPEN_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return sharpen_selfcheck() == 0 ? 0 : 1;
+    return sharpen_selfcheck() != 0;
 }
 #endif

@@ -1,22 +1,28 @@
-/* slope_y_selfcheck.c - runs embedded vectors through the filter on the part itself
+/* slope_y_selfcheck.c - checks the filter on the part itself
  *
  * Vertical slope per pixel, exact, three fraction bits
  *
- * Written by guardbit 0.1.0 from a spec with SHA-256
+ * Written by guardbit 0.1.0 from the spec with SHA-256
  * 46bd095399670a3c87a53f945711ce549d610fd3b7f2443e1c0aa15ead8b9aef.
- * Change the spec and emit again rather than edit this file. It belongs to you, the owner of
- * the spec, under any terms you like; it comes without warranty.
+ * Change the spec and emit again rather than edit this file. It belongs to the owner of the
+ * spec, who may use it under any terms; it comes without warranty.
  */
 #include "slope_y.h"
 
-/* Define SLOPE_Y_SELFCHECK_STDIO to print each mismatch,
- * and SLOPE_Y_SELFCHECK_NO_MAIN to call the function from a program of your own. */
+#if SLOPE_Y_EDITION != 0x0c2dcc2d
+#error "these files were not emitted together"
+#endif
+
+/* This program runs embedded vectors through the filter. Macros that may be defined:
+ * SLOPE_Y_SELFCHECK_STDIO: print each mismatch
+ * SLOPE_Y_SELFCHECK_NO_MAIN: leave out main, for a program that calls the function
+ */
 #ifdef SLOPE_Y_SELFCHECK_STDIO
 #include <stdio.h>
 #endif
 
 /* Number of output elements that differ from the vectors; a call that fails counts as one. */
-int slope_y_selfcheck(void);
+long slope_y_selfcheck(void);
 
 /* noise: 24 x 24, random */
 static const uint8_t source_1[576] = {
@@ -182,35 +188,36 @@ static const int16_t expected_7[1] = {
     1020
 };
 
-static const struct {
+struct vector {
     const uint8_t *source;
-    const int16_t *expected;
+    const int16_t *expected; /* null: the output is empty */
     size_t width;
     size_t height;
     size_t out_width;
     size_t out_height;
-} vectors[] = {
+};
+
+static const struct vector vectors[] = {
     { source_1, expected_1, 24, 24, 22, 22 },
     { source_2, expected_2, 24, 24, 22, 22 },
     { source_3, NULL, 1, 1, 0, 0 },
     { source_4, expected_4, 3, 3, 1, 1 },
     { source_5, expected_5, 3, 3, 1, 1 },
     { source_6, expected_6, 3, 3, 1, 1 },
-    { source_7, expected_7, 3, 3, 1, 1 },
+    { source_7, expected_7, 3, 3, 1, 1 }
 };
 
-static int check(size_t number)
+static long check(size_t number)
 {
     static int16_t output[484];
     static slope_y_word scratch[SLOPE_Y_SCRATCH_LEN(24)];
-    const size_t elements = vectors[number].out_width * vectors[number].out_height;
-    int mismatches = 0;
-    int status;
+    const struct vector *const v = &vectors[number];
+    const size_t elements = v->out_width * v->out_height;
+    long mismatches = 0;
     size_t i;
+    int status;
 
-    status = slope_y_frame(vectors[number].source, vectors[number].width,
-        output, vectors[number].out_width,
-        vectors[number].width, vectors[number].height,
+    status = slope_y_frame(v->source, v->width, output, v->out_width, v->width, v->height,
         scratch, sizeof scratch / sizeof *scratch);
     if (status != SLOPE_Y_OK) {
 #ifdef SLOPE_Y_SELFCHECK_STDIO
@@ -219,10 +226,10 @@ static int check(size_t number)
         return 1;
     }
     for (i = 0; i < elements; i++) {
-        if (output[i] != vectors[number].expected[i]) {
+        if (output[i] != v->expected[i]) {
 #ifdef SLOPE_Y_SELFCHECK_STDIO
             printf("vector %lu, element %lu: got %ld, expected %ld\n", (unsigned long)number,
-                (unsigned long)i, (long)output[i], (long)vectors[number].expected[i]);
+                (unsigned long)i, (long)output[i], (long)v->expected[i]);
 #endif
             mismatches++;
         }
@@ -230,9 +237,9 @@ static int check(size_t number)
     return mismatches;
 }
 
-int slope_y_selfcheck(void)
+long slope_y_selfcheck(void)
 {
-    int mismatches = 0;
+    long mismatches = 0;
     size_t number;
 
     for (number = 0; number < sizeof vectors / sizeof *vectors; number++) {
@@ -244,6 +251,6 @@ int slope_y_selfcheck(void)
 #ifndef SLOPE_Y_SELFCHECK_NO_MAIN
 int main(void)
 {
-    return slope_y_selfcheck() == 0 ? 0 : 1;
+    return slope_y_selfcheck() != 0;
 }
 #endif

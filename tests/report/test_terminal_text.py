@@ -6,12 +6,12 @@ from io import StringIO
 import pytest
 
 from guardbit.model.certificate import Digest, RungResult
+from guardbit.model.decimals import lower, signed, upper
 from guardbit.model.finding import Place, finding
 from guardbit.model.sizing import Interval, Sizing
 from guardbit.report.glossary import GLOSSARY, meaning
 from guardbit.report.look import Look, look_of
 from guardbit.report.terminal import emit_text, finding_line, next_line, size_text, verify_text
-from guardbit.model.decimals import lower, signed, upper
 from guardbit.report.text import grouped, ratio, shown
 
 Snapshot = Callable[[str, str], None]
