@@ -20,9 +20,10 @@ def check(plan: Plan, sizing: Sizing) -> Plan:
     Raises PlanFaultError with everything that is wrong.
     """
     f = sizing.filter
+    if faults := [*_chain_faults(plan, f)]:
+        raise PlanFaultError("; ".join(faults))  # rows that are not made have no values
     evaluation = evaluate(plan, f)
     faults = [f"{owed} does not hold" for owed in evaluation.obligations if not owed.holds]
-    faults += _chain_faults(plan, f)
     faults += _load_faults(plan, f)
     for step, form in zip(plan.steps, evaluation.forms, strict=True):
         stage = f.passes[step.stage]
