@@ -94,6 +94,9 @@ def _figures(look: Look, error: ErrorBound, rungs: Sequence[RungResult]) -> Tabl
     bound = f"{signed(lower(error.low))} .. {signed(upper(error.high))} LSB"
     condition = ", unless a register wraps or saturates" if error.assumes_no_wrap else ""
     table.add_row("  error bound", bound + condition)
+    if error.overall is not None:
+        low, high = error.overall
+        table.add_row("  for any input", f"{signed(lower(low))} .. {signed(upper(high))} LSB")
     for figure in (f for rung in rungs for f in rung.figures if _is_error(f)):
         table.add_row(words(look, f"  {figure.name}"), words(look, _value(figure)))
     return table

@@ -15,7 +15,7 @@ from guardbit.report.text import interval, plural, ratio
 
 _LABELS = 22
 _BAR = 24
-_CONDITION = "    (for inputs that make no register wrap or saturate)"
+_CONDITION = "    (the bound in all: for inputs that make no register wrap or saturate)"
 
 
 def size_text(look: Look, sizing: Sizing) -> str:
@@ -138,6 +138,8 @@ def _error(look: Look, error: ErrorBound) -> Table:
     for part in error.parts:
         table.add_row(Text("    ").append(words(look, part.cause)), *_pair(part.low, part.high))
     table.add_row("    bound in all", *_pair(error.low, error.high))
+    if error.overall is not None:
+        table.add_row("    for any input", *_pair(*error.overall))
     return table
 
 

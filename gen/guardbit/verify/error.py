@@ -45,7 +45,7 @@ def result(sizing: Sizing, vectors: Sequence[Vector]) -> RungResult:
     taps = len(_ideal_terms(filter_))
     small = [v for v in chosen if v.frame.size * taps <= _MOST_WORK]
     spans = _spans(filter_, small)
-    findings = () if sizing.error.assumes_no_wrap else tuple(_beyond(sizing, spans))
+    findings = tuple(_beyond(sizing, spans))
     skipped = len(chosen) - len(small)
     return RungResult(
         NAME,
@@ -78,17 +78,21 @@ def _high(value: Fraction) -> str:
 
 def _beyond(sizing: Sizing, spans: Sequence[Span]) -> list[Finding]:
     bound = sizing.error
+    # a frame may well make a register wrap: what holds then is the bound for any input
+    least, greatest = bound.overall or (bound.low, bound.high)
+    if bound.assumes_no_wrap and bound.overall is None:
+        return []
     return [
         finding(
             "error-beyond-bound",
             frame=span.frame,
             least=_low(span.low),
             greatest=_high(span.high),
-            low=_low(bound.low),
-            high=_high(bound.high),
+            low=_low(least),
+            high=_high(greatest),
         )
         for span in spans
-        if span.low < bound.low or span.high > bound.high
+        if span.low < least or span.high > greatest
     ]
 
 
