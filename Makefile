@@ -13,7 +13,7 @@ help: ## Show this list.
 $(BIN)/ready: pyproject.toml
 	$(PYTHON) -m venv $(VENV)
 	$(BIN)/python -m pip install --quiet --upgrade pip
-	$(BIN)/python -m pip install --quiet --editable '.[dev]'
+	$(BIN)/python -m pip install -qq --editable '.[dev]'
 	touch $@
 
 demo: $(BIN)/ready ## Size, emit and verify every example; filter a photograph with the compiled C.

@@ -24,12 +24,12 @@ from guardbit.build.library import compile_library
 from guardbit.cli import api
 from guardbit.emit.emission import emit
 from guardbit.files.images import image_bytes, read_image
+from guardbit.model.decimals import lower, upper
 from guardbit.model.finding import GuardbitError
 from guardbit.model.routine import Call, Outcome, Routine
 from guardbit.model.sizing import Sizing
 from guardbit.plan.direct import direct
 from guardbit.reference.run import output_positions, respond
-from guardbit.report.text import lower, upper
 
 HERE = Path(__file__).resolve().parent
 RAW_FRAMES = {"raw_smooth": "shoulder.pgm"}
