@@ -31,7 +31,7 @@ campaign: $(BIN)/ready ## Compare C, reference, oracle and SciPy on thousands of
 	$(BIN)/python tests/campaign $(CAMPAIGN)
 
 coverage: $(BIN)/ready ## Measure line and branch coverage of the package by the test suite.
-	$(BIN)/python -m coverage run -m pytest tests
+	$(BIN)/python -m coverage run -m pytest -n $(JOBS) tests
 	$(BIN)/python -m coverage combine --quiet
 	$(BIN)/python -m coverage report
 

@@ -11,12 +11,14 @@ from guardbit.build.compiler import Compiler, Family, find_compiler, identify
 from guardbit.build.coverage import coverage_tool
 from guardbit.build.library import compile_library
 from guardbit.model.finding import MachineError
+from tools import needs
 
 from .snippets import turner
 
 
 @pytest.mark.parametrize(("command", "family"), [("gcc", Family.GCC), ("clang", Family.CLANG)])
 def test_families_are_told_apart(command: str, family: Family) -> None:
+    needs(command)
     found = find_compiler({"CC": command})
     assert found.family is family
     assert found.command == (command,)

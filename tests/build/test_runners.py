@@ -13,6 +13,7 @@ from guardbit.build.library import HostRunner, compile_library
 from guardbit.build.processes import run_tasks
 from guardbit.build.sanitized import describe, sanitized_runner
 from guardbit.model.routine import UNWRITTEN, Call, Harm, Outcome, Routine
+from tools import needs
 
 from .snippets import tail, turner
 
@@ -145,6 +146,7 @@ def test_probes_answer_in_order_and_outlive_harm(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize("compiler", ["gcc", "clang"])
 def test_sanitizers_name_kind_and_line(compiler: str, tmp_path: Path) -> None:
+    needs(compiler)
     more = "if (w == 3) { d[h * ds] = 1; } if (w == 2) { int32_t b = 2147483647; b += (int32_t)h; }"
     routine = turner(more=more)
     runner = sanitized_runner(find_compiler({"CC": compiler}), routine, [tail()], tmp_path)
@@ -164,6 +166,7 @@ def test_a_sanitizer_report_without_place_is_kept() -> None:
 
 @pytest.mark.parametrize("compiler", ["gcc", "clang"])
 def test_what_is_not_executed_is_listed(compiler: str, tmp_path: Path) -> None:
+    needs(compiler)
     routine = turner(more="if (w == 9) {\n        d[0] = 1;\n    }")
     found = find_compiler({"CC": compiler})
     program = coverage_program(found, routine, [], tmp_path)

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import pytest
 
 from guardbit.model.routine import Status
+from tools import needs
 
 from .bench import MAIN, STRICT, UNIT, complaints, run
 from .conftest import Bench
@@ -27,6 +28,7 @@ def test_table_asks_for_everything(table: Bench) -> None:
 
 
 def test_gcc_optimised(table: Bench) -> None:
+    needs("gcc")
     program = table.folder / "optimised"
     run(["gcc", *STRICT, "-O1", UNIT, str(MAIN), "-o", str(program)], table.folder)
     assert complaints(program, table.job(), table.made) == []
@@ -34,6 +36,7 @@ def test_gcc_optimised(table: Bench) -> None:
 
 def test_clang_sanitized(table: Bench) -> None:
     """Conversions without a cast must keep the value as well, which C does not ask for."""
+    needs("clang")
     program = table.folder / "sanitized"
     checks = "-fsanitize=address,undefined,implicit-conversion"
     command = ["clang", *STRICT, "-O0", checks, "-fno-sanitize-recover=all"]
@@ -78,6 +81,7 @@ def test_other_data_models(table: Bench, model: DataModel) -> None:
     The intermediate code holds all promotions and conversions of the target, and traps where
     a number leaves its type. What is left out are blocks that need an index beyond 15 bits.
     """
+    needs("clang")
     code, program = table.folder / f"{model.name}.ll", table.folder / model.name
     traps = ["-Xclang", f"-fsanitize={TRAPS}", "-Xclang", f"-fsanitize-trap={TRAPS}"]
     front = ["clang", f"--target={model.target}", "-ffreestanding", *STRICT, "-O0", *traps]
@@ -95,12 +99,14 @@ def _without_target(code: str) -> str:
 
 
 def test_cppcheck_is_silent(table: Bench) -> None:
+    needs("cppcheck")
     checks = "--enable=warning,portability,performance,style"
     names = [f"{each.filter.name}.c" for each in table.made]
     assert run(["cppcheck", "-q", "-j2", "--std=c99", checks, *names], table.folder) == ""
 
 
 def test_headers_are_cpp(table: Bench) -> None:
+    needs("g++")
     every = "".join(f'#include "{each.filter.name}.h"\n' for each in table.made)
     (table.folder / "all.cpp").write_text(every)
     flags = ["-std=c++17", "-fsyntax-only", "-Wall", "-Wextra", "-pedantic", "-Werror"]
@@ -108,6 +114,7 @@ def test_headers_are_cpp(table: Bench) -> None:
 
 
 def test_only_prefixed_symbols_are_visible(table: Bench) -> None:
+    needs("clang", "nm")
     run(["clang", "-std=c99", "-ffreestanding", "-c", UNIT, "-o", "all.o"], table.folder)
     symbols = set(run(["nm", "-g", "all.o"], table.folder).split()[2::3])
     wanted = {
