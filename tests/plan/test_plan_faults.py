@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 import packaged
 import randomspecs
 from guardbit.model.finding import SpecError
-from guardbit.model.plan import Cell, Floor, Plan, Sum, Tail, TiesToEven
+from guardbit.model.plan import Cell, Field, Floor, Plan, SaturatingSum, Sum, Tail, TiesToEven
 from guardbit.model.sizing import Interval, Sizing
 from guardbit.plan.conformity import check
 from guardbit.plan.direct import direct
@@ -140,6 +140,57 @@ def test_a_wrong_plan_is_refused(fault: str, rounding: str) -> None:
 )
 def test_a_wrong_plan_of_two_passes_is_refused(change: Callable[[Plan], Plan]) -> None:
     sizing = packaged.sized(TWO_PASSES, Path(), "twice")
+    plan = check(direct(sizing), sizing)
+    with pytest.raises(PlanFaultError):
+        check(change(plan), sizing)
+
+
+REGISTER = """
+[filter]
+name = "narrow"
+[kernel]
+taps = [[1, 2, 1, -1]]
+[input]
+bits = 8
+[accumulator]
+bits = 9
+overflow = "{policy}"
+[output]
+bits = 16
+signed = true
+"""
+
+
+def value_changed(**changes: object) -> Callable[[Plan], Plan]:
+    def apply(tail: Tail) -> Tail:
+        return replace(tail, of=replace(tail.of, **changes))  # type: ignore[arg-type]
+
+    return tail_changed(apply)
+
+
+def reversed_sum(tail: Tail) -> Tail:
+    assert isinstance(tail.of, SaturatingSum)
+    return replace(tail, of=replace(tail.of, groups=tail.of.groups[::-1]))
+
+
+def plain_sum(tail: Tail) -> Tail:
+    inner = tail.of.of if isinstance(tail.of, Field) else tail.of
+    return replace(tail, of=Sum(inner.start, inner.groups, inner.cell))
+
+
+@pytest.mark.parametrize(
+    ("policy", "change"),
+    [
+        ("saturate", value_changed(limits=Interval(-256, 254))),
+        ("saturate", tail_changed(reversed_sum)),
+        ("saturate", tail_changed(plain_sum)),
+        ("wrap", value_changed(bits=10)),
+        ("wrap", value_changed(signed=False)),
+        ("wrap", tail_changed(plain_sum)),
+    ],
+)
+def test_a_register_that_is_another_is_refused(policy: str, change: Callable[[Plan], Plan]) -> None:
+    sizing = packaged.sized(REGISTER.format(policy=policy), Path(), "narrow")
     plan = check(direct(sizing), sizing)
     with pytest.raises(PlanFaultError):
         check(change(plan), sizing)

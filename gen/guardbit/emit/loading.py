@@ -54,16 +54,16 @@ class FillText:
 class LoadText:
     """The function that loads extended row e.
 
-    `index` is the C expression of the source row, `y`. With a constant border a row for
-    which `outside` holds is filled with `constant`. `fills` make up the row. `reads` is
-    False if no output is near enough to the image for that.
+    `line` is the C expression of the source row, with `y` to be computed first unless that is
+    empty. With a constant border a row for which `outside` holds is filled with `constant`.
+    `fills` make up the row. `reads` is False if no output is near enough to the image for that.
     """
 
     function: str
     extent: str
     needs_height: bool
     y: str
-    is_mapped: bool
+    line: str
     outside: str
     constant: str
     columns: str
@@ -98,8 +98,8 @@ def load_text(f: Filter, plan: Plan, g: GeometryText) -> LoadText:
         function=f"{f.name}_load" if plan.rows[0].name == "ring" else f"{f.name}_extend",
         extent=_extent(g, bool(leaves) or g.columns.first < 0 or g.columns.after > 0),
         needs_height=bool(leaves) and load.needs_length(g.rows),
-        y=load.row_index(),
-        is_mapped=bool(leaves) and not constant,
+        y=load.row_index() if leaves else "",
+        line="y" if leaves else c.grouped(c.plus("e", g.rows.first)),
         outside=" || ".join(leaves) if constant else "",
         constant=c.number(plan.load.constant),
         columns=load.elements(c.plus("(int32_t)width", g.columns.extra)),
@@ -145,11 +145,10 @@ class _Loading:
         return c.times(self.channels, pixels)
 
     def row_index(self) -> str:
-        """Return the row of the source that extended row e shows."""
+        """Return the row of the source that extended row e shows, which may be outside."""
         rows = self.geometry.rows
         y = c.plus("(int32_t)e", rows.first)
-        leaves = rows.first < 0 or rows.after > 0
-        return self._index(y, rows) if leaves and self._maps else y
+        return self._index(y, rows) if self._maps else y
 
     @property
     def _maps(self) -> bool:

@@ -101,7 +101,7 @@ def step_text(sizing: Sizing, plan: Plan, step: Step) -> StepText:
     wraps = register_text(f"{prefix}_wrap", tail.of) if isinstance(tail.of, Field) else None
     return StepText(
         function=step_function(f, plan, step),
-        purpose=words.step_words(step.name, vertical=_is_vertical(x)),
+        purpose=words.step_words(step.name, vertical=_is_vertical(x), widens=_widens(x)),
         kernel=kernel_lines(stage.kernel, f.geometry),
         from_ring=plan.rows[step.stage].depth > 1,
         pointers=_pointers(x),
@@ -148,6 +148,11 @@ def _type(x: _Context) -> str:
 def _is_vertical(x: _Context) -> bool:
     """Return whether one of two passes reads a column of the ring, the other a row."""
     return x.plan.rows[x.step.stage].name == "ring"
+
+
+def _widens(x: _Context) -> bool:
+    """Return whether operands are cast to a wider type before they are multiplied."""
+    return any(group.cell.bits > 16 and group.cell != x.plan.word for group in x.sum.groups)
 
 
 def _row_of(plan: Plan, term: Product) -> int:

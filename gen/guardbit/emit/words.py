@@ -13,7 +13,7 @@ from guardbit.model.enums import (
     Preload,
     Rounding,
 )
-from guardbit.model.filter import Filter, Pass, PixelFormat, Requantiser
+from guardbit.model.filter import Axis, Filter, Pass, PixelFormat, Requantiser
 from guardbit.model.plan import Tail
 from guardbit.model.sizing import ErrorBound, RegisterSizing, Sizing
 
@@ -82,14 +82,15 @@ def tail_comment(stage: Pass, tail: Tail) -> str:
     return f"{text}."
 
 
-def step_words(name: str, *, vertical: bool) -> str:
+def step_words(name: str, *, vertical: bool, widens: bool) -> str:
     """Return what a row step does."""
     along = "down the columns" if vertical else "along the rows"
-    return {
+    purpose = {
         "row": "Compute one output row. `top` is the extended row that the uppermost tap reads.",
         "first": f"The first pass, {along}: one row of intermediate codes.",
         "second": f"The second pass, {along}: one output row.",
     }[name]
+    return f"{purpose} Operands are widened first: int may have 16 bits." if widens else purpose
 
 
 def ranges(register: RegisterSizing) -> str:
@@ -132,13 +133,25 @@ def _extent(f: Filter) -> str:
         Extent.FULL: "every position that a tap reaches",
         Extent.VALID: "positions whose every tap reads inside the image",
     }[g.extent]
-    steps = (g.rows.step, g.columns.step)
-    if steps != (1, 1):
-        phases = (g.rows.phase, g.columns.phase)
-        words += f", of these every {steps} from {phases} on"
+    if (g.rows.step, g.columns.step) != (1, 1):
+        words += f"; of these rows {_kept(g.rows)} and columns {_kept(g.columns)}"
     if g.channels > 1:
         words += f"; {g.channels} interleaved channels"
     return words
+
+
+def _kept(axis: Axis) -> str:
+    numbers = (axis.phase + count * axis.step for count in range(3))
+    return ", ".join(map(str, numbers)) + ", ..."
+
+
+def _source(f: Filter) -> list[str]:
+    """Return the format of the source, and what its container may hold besides."""
+    container, bits = f.input.container, (f.input.high - f.input.low + 1).bit_length() - 1
+    words = format_words(f.input)
+    if (bits, f.input.low < 0) == (container.bits, container.signed):
+        return [words]
+    return [f"{words};", f"other codes {_outside(f)}"]
 
 
 def _outside(f: Filter) -> str:
@@ -155,7 +168,7 @@ def contract(sizing: Sizing) -> list[str]:
     lines = [
         f"{f.operation.value}: {_operation(f)}",
         "",
-        *_entry("source", f"{format_words(f.input)};", f"other codes {_outside(f)}"),
+        *_entry("source", *_source(f)),
         *_entry("border", _border(f)),
     ]
     for index, (register, stage) in enumerate(zip(sizing.registers, f.passes, strict=True)):
@@ -183,6 +196,8 @@ def _entry(word: str, *texts: str) -> list[str]:
 
 
 def _border(f: Filter) -> str:
+    if f.geometry.extent is Extent.VALID:
+        return "none is needed: every tap reads inside the image"
     if f.border.mode is BorderMode.CONSTANT:
         return f"outside the image: the code {f.border.value}"
     site = f.border.grid is Grid.SITE
@@ -191,11 +206,10 @@ def _border(f: Filter) -> str:
 
 def _error(error: ErrorBound) -> list[str]:
     low, high = outward(error.low, up=False), outward(error.high, up=True)
-    lines = [f"{low} to {high} LSB of the output code against the ideal filter"]
-    if error.assumes_no_wrap:
-        lines[0] += ";"
-        lines.append("where neither a register nor the output wraps or saturates in mid-sum")
-    return lines
+    line = f"{low} to {high} LSB of the output code against the ideal filter"
+    if not error.assumes_no_wrap:
+        return [line]
+    return [f"{line},", "for sources with which no sum leaves its register and no output wraps"]
 
 
 _PLACES = 10**4
