@@ -57,7 +57,8 @@ static align6_word align6_first_requantise(int32_t acc)
     return (align6_word)code;
 }
 
-/* The first pass, along the rows: one row of intermediate codes.
+/* The first pass, along the rows: one row of intermediate codes. Operands are widened first:
+ * int may have 16 bits.
  *
  * Coefficients of the pixels about the output, row 0, columns -2 to 3:
  *     3   -16    77    77   -16     3
@@ -140,19 +141,14 @@ static void align6_load(const uint8_t *src, size_t src_stride, size_t width, siz
 /* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
 static int align6_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 1u > 65534u || height - 1u > 65534u) {
         return 0;
     }
-    columns = (uint32_t)width;
-    rows = (uint32_t)height;
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = width;
+    *out_height = height;
     return 1;
 }
 

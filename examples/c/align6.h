@@ -26,8 +26,7 @@ extern "C" {
 /*
  * correlation: y[n1, n2] = sum h[k1, k2] * x[n1 + k1, n2 + k2]
  *
- * source          8-bit unsigned, codes 0 to 255;
- *                 other codes give unspecified values, never undefined behaviour
+ * source          8-bit unsigned, codes 0 to 255
  * border          outside the image: the nearest pixel of the edge
  * accumulator 1   17 bits, two's complement, of which 17 are needed; cannot overflow;
  *                 -8096 to 40864 at the end, for legal codes

@@ -84,19 +84,14 @@ static void mean25_row(const mean25_word *ring, size_t pitch, uint32_t top, size
 /* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
 static int mean25_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 1u > 65534u || height - 1u > 65534u) {
         return 0;
     }
-    columns = (uint32_t)width;
-    rows = (uint32_t)height;
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = width;
+    *out_height = height;
     return 1;
 }
 

@@ -103,19 +103,14 @@ static void mosaic_green_row(const mosaic_green_word *ring, size_t pitch, uint32
 static int mosaic_green_sizes(size_t width, size_t height, size_t *out_width,
     size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 4u > 1276u || height - 4u > 956u) {
         return 0;
     }
-    columns = (uint32_t)width / 2;
-    rows = ((uint32_t)height + 1) / 2;
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = (size_t)((uint32_t)width / 2);
+    *out_height = (size_t)(((uint32_t)height + 1) / 2);
     return 1;
 }
 

@@ -35,7 +35,8 @@ extern "C" {
  * requantiser     acc / 2^2, rounded to nearest, ties toward plus infinity, plus the pedestal
  *                 256, held to 0 to 4095
  * output          12-bit unsigned, codes 0 to 4095, 256 stands for zero, one step is 2^-2;
- *                 one for each source pixel, of these every (2, 2) from (0, 1) on
+ *                 one for each source pixel; of these rows 0, 2, 4, ... and columns 1, 3, 5,
+ *                 ...
  * error           -0.25 to 0.5 LSB of the output code against the ideal filter
  *
  * These bounds hold only for codes inside the declared range of the source. They are

@@ -61,7 +61,8 @@ static uint16_t raw_smooth_requantise(int32_t acc)
     return (uint16_t)code;
 }
 
-/* Compute one output row. `top` is the extended row that the uppermost tap reads.
+/* Compute one output row. `top` is the extended row that the uppermost tap reads. Operands are
+ * widened first: int may have 16 bits.
  *
  * Coefficients of the pixels about the output, rows -2 to 2, columns -2 to 2:
  *     82    284    428    284     82
@@ -117,7 +118,7 @@ static int raw_smooth_is_legal(const uint16_t *src, size_t src_stride, size_t wi
     return 1;
 }
 
-/* Whether every source row that output rows from to to - 1 read is legal. */
+/* Whether every source row that output rows `from` to `to` - 1 read is legal. */
 static int raw_smooth_are_legal(const uint16_t *src, size_t src_stride, size_t width,
     size_t height, size_t from, size_t to)
 {
@@ -142,19 +143,14 @@ static int raw_smooth_are_legal(const uint16_t *src, size_t src_stride, size_t w
 /* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
 static int raw_smooth_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 1u > 65534u || height - 1u > 65534u) {
         return 0;
     }
-    columns = (uint32_t)width;
-    rows = (uint32_t)height;
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = width;
+    *out_height = height;
     return 1;
 }
 

@@ -27,8 +27,7 @@ static int32_t seam_index(int32_t at, int32_t length)
 static void seam_load(const uint8_t *src, size_t src_stride, size_t width, uint32_t e,
     seam_word *SEAM_RESTRICT row)
 {
-    const int32_t y = (int32_t)e;
-    const uint8_t *const line = src + (size_t)y * src_stride;
+    const uint8_t *const line = src + (size_t)e * src_stride;
     const int32_t columns = (int32_t)width + 8;
     int32_t x;
 
@@ -96,19 +95,14 @@ static void seam_row(const seam_word *r0, size_t count, int8_t *SEAM_RESTRICT ds
 /* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
 static int seam_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 64u > 4032u || height - 1u > 65534u) {
         return 0;
     }
-    columns = (uint32_t)width;
-    rows = (uint32_t)height;
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = width;
+    *out_height = height;
     return 1;
 }
 

@@ -26,8 +26,7 @@ extern "C" {
 /*
  * convolution: y[n1, n2] = sum h[k1, k2] * x[n1 - k1, n2 - k2]
  *
- * source          8-bit unsigned, codes 0 to 255;
- *                 other codes give unspecified values, never undefined behaviour
+ * source          8-bit unsigned, codes 0 to 255
  * border          outside the image: the image again and again
  * accumulator     16 bits, two's complement, of which 18 are needed; saturates at every add;
  *                 -65790 to 65790 at the end; the register holds -32768 to 32767 of it, for
@@ -35,8 +34,8 @@ extern "C" {
  * requantiser     acc / 2^8, rounded toward zero, held to -128 to 127
  * output          8-bit signed, codes -128 to 127;
  *                 one for each source pixel
- * error           -2.9883 to 2.9883 LSB of the output code against the ideal filter;
- *                 where neither a register nor the output wraps or saturates in mid-sum
+ * error           -2.9883 to 2.9883 LSB of the output code against the ideal filter,
+ *                 for sources with which no sum leaves its register and no output wraps
  *
  * These bounds hold only for codes inside the declared range of the source. They are
  * engineering evidence, not the work of a qualified tool: verifying the product stays with

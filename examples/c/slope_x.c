@@ -17,8 +17,7 @@
 static void slope_x_load(const uint8_t *src, size_t src_stride, size_t width, uint32_t e,
     slope_x_word *SLOPE_X_RESTRICT row)
 {
-    const int32_t y = (int32_t)e;
-    const uint8_t *const line = src + (size_t)y * src_stride;
+    const uint8_t *const line = src + (size_t)e * src_stride;
     const int32_t columns = (int32_t)width;
     int32_t x;
 
@@ -62,19 +61,14 @@ static void slope_x_row(const slope_x_word *ring, size_t pitch, uint32_t top, si
 /* Tell the size of the output; returns 0, and the size is 0 x 0, if the source's is not legal. */
 static int slope_x_sizes(size_t width, size_t height, size_t *out_width, size_t *out_height)
 {
-    uint32_t columns;
-    uint32_t rows;
-
     *out_width = 0;
     *out_height = 0;
     /* a size below the least wraps round */
     if (width - 1u > 65534u || height - 1u > 65534u) {
         return 0;
     }
-    columns = (width > 2 ? (uint32_t)width - 2 : 0);
-    rows = (height > 2 ? (uint32_t)height - 2 : 0);
-    *out_width = (size_t)columns;
-    *out_height = (size_t)rows;
+    *out_width = (size_t)(width > 2 ? (uint32_t)width - 2 : 0);
+    *out_height = (size_t)(height > 2 ? (uint32_t)height - 2 : 0);
     return 1;
 }
 

@@ -26,9 +26,8 @@ extern "C" {
 /*
  * convolution: y[n1, n2] = sum h[k1, k2] * x[n1 - k1, n2 - k2]
  *
- * source          8-bit unsigned, codes 0 to 255;
- *                 other codes give unspecified values, never undefined behaviour
- * border          outside the image: the code 0
+ * source          8-bit unsigned, codes 0 to 255
+ * border          none is needed: every tap reads inside the image
  * accumulator     11 bits, two's complement, of which 11 are needed; cannot overflow;
  *                 -1020 to 1020 at the end, for legal codes
  * requantiser     acc, which legal sources keep within -32768 to 32767

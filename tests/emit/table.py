@@ -203,7 +203,7 @@ def _inputs() -> dict[str, Tables]:
     cases: dict[str, Tables] = {}
     for bits in (1, 8, 12, 16):
         for signed in (False, True):
-            kind = "is"[not signed]
+            kind = "s" if signed else "u"
             cases[f"in_{kind}{bits}"] = {
                 "taps": SKEW,
                 "input": {"bits": bits, "signed": signed},
@@ -211,7 +211,7 @@ def _inputs() -> dict[str, Tables]:
             }
     for bits in (1, 8, 11, 16, 17, 24, 31, 32):
         for signed in (False, True):
-            cases[f"out_{'is'[not signed]}{bits}"] = {
+            cases[f"out_{'s' if signed else 'u'}{bits}"] = {
                 "taps": [[1000, -70000], [3, 5]],
                 "input": {"bits": 16},
                 "output": {"bits": bits, "signed": signed},

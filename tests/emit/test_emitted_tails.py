@@ -12,7 +12,7 @@ from guardbit.arith.rounding import requantise
 from guardbit.arith.words import wrap
 from guardbit.emit import expressions as c
 from guardbit.model.enums import Overflow, Preload, Rounding
-from guardbit.model.plan import Cell
+from guardbit.model.plan import Cell, Thresholds
 from guardbit.model.routine import Probe
 from guardbit.model.sizing import Interval
 
@@ -69,7 +69,7 @@ def test_every_requantiser(table: Bench, tail: Callable[[int, int], int]) -> Non
 
 
 def test_every_rounding_meets_every_form(table: Bench) -> None:
-    """A guard of the table: all forms of quotients, and all of them with each mode that has them."""
+    """A guard of the table itself: all forms of quotients, the two commonest in each mode."""
     met = {
         (type(step.value.quotient).__name__, each.filter.passes[step.stage].requantiser.rounding)
         for each in table.made
@@ -144,6 +144,6 @@ def test_constants(value: int, text: str) -> None:
 
 def test_small_sums_of_comparisons_are_cast() -> None:
     """A comparison is an int, to which 32767 cannot be added where int has 16 bits."""
-    form = c.Thresholds(5, None)
+    form = Thresholds(5, None)
     assert c.with_offset(form, "(n >= 5)", 7, Cell(32, True)) == "(n >= 5) + 7"
     assert c.with_offset(form, "(n >= 5)", 32767, Cell(32, True)) == "(int32_t)(n >= 5) + 32767"

@@ -10,8 +10,8 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from fit.specs import EXACT, spec
 
+from fit.specs import EXACT, spec
 from guardbit.emit.emission import emit
 from guardbit.emit.kernel import kernel_lines
 from guardbit.emit.layout import comment, fold, harmless, prose

@@ -1,210 +1,339 @@
-"""The evaluator and the conformity check find what is wrong with a plan, whoever made it."""
+"""A plan that does not compute its filter, or whose types are too small, is refused."""
 
-from collections.abc import Callable
-from dataclasses import replace
-from pathlib import Path
+from collections.abc import Callable, Iterator
+from dataclasses import fields, is_dataclass, replace
+from typing import Any
 
 import pytest
-from hypothesis import given, settings
-from hypothesis import strategies as st
 
-import packaged
-import randomspecs
-from guardbit.model.finding import SpecError
-from guardbit.model.plan import Cell, Field, Floor, Plan, SaturatingSum, Sum, Tail, TiesToEven
+from emit.table import cases
+from guardbit.fit.resolve import resolve
+from guardbit.model.enums import Overflow
+from guardbit.model.plan import (
+    Cell,
+    Field,
+    Floor,
+    Group,
+    Load,
+    Plan,
+    Product,
+    SaturatingSum,
+    Step,
+    Sum,
+    Tail,
+    Thresholds,
+    TiesToAway,
+    TiesToEven,
+    Truncate,
+)
 from guardbit.model.sizing import Interval, Sizing
 from guardbit.plan.conformity import check
 from guardbit.plan.direct import direct
 from guardbit.plan.evaluate import PlanFaultError, evaluate
+from guardbit.sizing.analyse import analyse
 
-SHARPEN = """
-[filter]
-name = "sharpen"
-[kernel]
-taps = [[0, -1, 0], [-1, 8, -1], [0, -1, 0]]
-divisor = 4
-[input]
-bits = 8
-pedestal = 16
-[output]
-rounding = "{rounding}"
-pedestal = 16
-"""
-TWO_PASSES = """
-[filter]
-name = "twice"
-[kernel]
-column = [1, 2, 1]
-row = [-1, 2, 1]
-divisor = [4, 2]
-[input]
-bits = 8
-[intermediate]
-bits = 8
-signed = false
-pedestal = 3
-"""
+Change = Callable[[Any], Any]
 
 
-def sharpen(rounding: str = "ties-to-positive") -> Sizing:
-    return packaged.sized(SHARPEN.format(rounding=rounding), Path(), "sharpen")
+def sized(name: str) -> Sizing:
+    return analyse(resolve(cases()[name]))
 
 
-def tail_changed(change: Callable[[Tail], Tail], step: int = -1) -> Callable[[Plan], Plan]:
-    def apply(plan: Plan) -> Plan:
-        steps = list(plan.steps)
-        steps[step] = replace(steps[step], value=change(steps[step].value))
-        return replace(plan, steps=tuple(steps))
-
-    return apply
+Node = Any
 
 
-def sum_changed(change: Callable[[Sum], Sum]) -> Callable[[Plan], Plan]:
-    def apply(tail: Tail) -> Tail:
-        assert isinstance(tail.of, Sum)
-        return replace(tail, of=change(tail.of))
-
-    return tail_changed(apply)
-
-
-def one_more(value: Sum) -> Sum:
-    group = value.groups[1]
-    term = replace(group.terms[0], coefficient=group.terms[0].coefficient + 1)
-    changed = replace(group, terms=(term, *group.terms[1:]))
-    return replace(value, groups=(value.groups[0], changed, *value.groups[2:]))
-
-
-def moved(value: Sum) -> Sum:
-    group = value.groups[0]
-    read = replace(group.terms[0].of, dx=group.terms[0].of.dx + 1)
-    changed = replace(group, terms=(replace(group.terms[0], of=read),))
-    return replace(value, groups=(changed, *value.groups[1:]))
+def changed(node: Node, kind: type, change: Change, path: str = "") -> Iterator[tuple[str, Node]]:
+    """Copies of a plan in which one node of that kind is another, with the node's path."""
+    if isinstance(node, kind):
+        other = change(node)
+        if other != node:
+            yield path, other
+    if isinstance(node, tuple):
+        for i, item in enumerate(node):
+            for where, other in changed(item, kind, change, f"{path}[{i}]"):
+                yield where, (*node[:i], other, *node[i + 1 :])
+    elif is_dataclass(node) and not isinstance(node, type):
+        for field in fields(node):
+            value = getattr(node, field.name)
+            for where, other in changed(value, kind, change, f"{path}.{field.name}"):
+                yield where, replace(node, **{field.name: other})
 
 
-def added(tail: Tail, by: int) -> Tail:
-    form = tail.quotient
-    assert isinstance(form, Floor | TiesToEven)
-    return replace(tail, quotient=replace(form, add=form.add + by))
+def refused(name: str, kind: type, change: Change) -> int:
+    """Apply a change at every place it fits, one at a time; each must be refused."""
+    sizing = sized(name)
+    plan = direct(sizing)
+    assert check(plan, sizing) == plan
+    count = 0
+    for path, other in changed(plan, kind, change):
+        with pytest.raises(PlanFaultError):
+            check(other, sizing)
+            pytest.fail(f"{name}{path} was taken")
+        count += 1
+    return count
 
 
-def lift_lost(tail: Tail) -> Tail:
-    assert isinstance(tail.quotient, Floor | TiesToEven)
-    return added(tail, -tail.quotient.divisor)
+def coefficient(by: int) -> Change:
+    return lambda node: replace(node, coefficient=node.coefficient + by)
 
 
-WRONG: dict[str, Callable[[Plan], Plan]] = {
-    "a coefficient one more": sum_changed(one_more),
-    "a tap that reads one column on": sum_changed(moved),
-    "a tap left out": sum_changed(lambda s: replace(s, groups=s.groups[1:])),
-    "a start value": sum_changed(lambda s: replace(s, start=1)),
-    "an accumulator of 8 bits": sum_changed(lambda s: replace(s, cell=Cell(8, True))),
-    "a group of 8 bits": sum_changed(
-        lambda s: replace(s, groups=tuple(replace(g, cell=Cell(8, True)) for g in s.groups))
+def regrouped(groups: tuple[Group, ...]) -> Change:
+    return lambda node: replace(node, groups=groups)
+
+
+def started(by: int) -> Change:
+    return lambda node: replace(node, start=node.start + by)
+
+
+def moved(dy: int, dx: int) -> Change:
+    return lambda node: replace(node, of=replace(node.of, dy=node.of.dy + dy, dx=node.of.dx + dx))
+
+
+EVERYWHERE = ("edge_constant", "down_pixels", "across_wraps", "clamp_s9", "wrap_s9", "modular_64")
+
+
+@pytest.mark.parametrize("name", EVERYWHERE)
+def test_wrong_taps(name: str) -> None:
+    for change in (coefficient(1), coefficient(-1), moved(1, 0), moved(0, -1)):
+        assert refused(name, Product, change) >= 5
+
+
+def test_lost_and_doubled_taps() -> None:
+    sizing = sized("edge_constant")
+    (step,) = direct(sizing).steps
+    assert isinstance(step.value.of, Sum)
+    groups = step.value.of.groups
+    for wrong in (groups[1:], groups[:-1], (*groups, groups[0]), ()):
+        plan = with_sum(direct(sizing), regrouped(wrong))
+        with pytest.raises(PlanFaultError):
+            check(plan, sizing)
+
+
+def with_sum(plan: Plan, change: Change) -> Plan:
+    (step,) = plan.steps
+    value = step.value.of
+    of = replace(value, of=change(value.of)) if isinstance(value, Field) else change(value)
+    return replace(plan, steps=(replace(step, value=replace(step.value, of=of)),))
+
+
+@pytest.mark.parametrize("name", ["start", "start_wrap", "start_clamp", "start_beyond"])
+def test_wrong_start(name: str) -> None:
+    for by in (1, -1):
+        for kind in (Sum, SaturatingSum):
+            refused(name, kind, started(by))
+    assert any(
+        refused(name, kind, lambda node: replace(node, start=0)) for kind in (Sum, SaturatingSum)
+    )
+
+
+@pytest.mark.parametrize(
+    ("name", "least"),
+    [("edge_constant", 3), ("out_s32", 3), ("clamp_wide", 3), ("wrap_wide", 3), ("down_32", 5)],
+)
+def test_narrow_cells(name: str, least: int) -> None:
+    """Every type but those that have room to spare is needed; half of each must not do."""
+    sizing = sized(name)
+    plan = direct(sizing)
+    needed = {o.cell for o in evaluate(plan, sizing.filter).obligations}
+    assert needed
+    caught = 0
+    for _, other in changed(plan, Cell, lambda cell: Cell(max(8, cell.bits // 2), cell.signed)):
+        owed = evaluate(other, sizing.filter).obligations
+        if all(o.holds for o in owed):
+            continue
+        with pytest.raises(PlanFaultError):
+            check(other, sizing)
+        caught += 1
+    assert caught >= least
+
+
+def test_unsigned_cells_hold_no_negative_number() -> None:
+    for name in ("edge_constant", "signed_pedestal", "down"):
+        sizing = sized(name)
+        plan = direct(sizing)
+        caught = 0
+        for _, other in changed(plan, Sum, lambda s: replace(s, cell=Cell(s.cell.bits, False))):
+            if any(not o.holds for o in evaluate(other, sizing.filter).obligations):
+                with pytest.raises(PlanFaultError):
+                    check(other, sizing)
+                caught += 1
+        assert caught
+
+
+QUOTIENTS: dict[type, tuple[Change, ...]] = {
+    Floor: (
+        lambda q: replace(q, add=q.add + 1),
+        lambda q: replace(q, add=q.add - 1),
+        lambda q: replace(q, add=q.add - q.less * q.divisor) if q.less else q,
+        lambda q: replace(q, divisor=q.divisor + 1),
     ),
-    "a rounding constant one less": tail_changed(lambda t: added(t, -1)),
-    "a dividend that may be negative": tail_changed(lift_lost),
-    "an offset one more": tail_changed(lambda t: replace(t, offset=t.offset + 1)),
-    "no saturation": tail_changed(lambda t: replace(t, overflow=None)),
-    "limits one less": tail_changed(lambda t: replace(t, limits=Interval(0, t.limits.high - 1))),
-    "an argument too narrow": tail_changed(lambda t: replace(t, argument=Interval(0, 10))),
-    "a work type too narrow": tail_changed(lambda t: replace(t, work=Cell(8, True))),
-    "a result too narrow": tail_changed(lambda t: replace(t, cell=Cell(8, True))),
-    "a word too narrow": lambda p: replace(p, word=Cell(8, True)),
-    "a pedestal forgotten": lambda p: replace(p, load=replace(p.load, pedestal=0)),
-    "another border constant": lambda p: replace(p, load=replace(p.load, constant=1)),
-    "codes clamped without need": lambda p: replace(
-        p, load=replace(p.load, clamp=Interval(0, 100))
+    TiesToEven: (
+        lambda q: replace(q, add=q.add + 1),
+        lambda q: replace(q, add=q.add + q.divisor),
+        lambda q: replace(q, divisor=2 * q.divisor),
     ),
-    "a step left out": lambda p: replace(p, steps=()),
+    Thresholds: (
+        lambda q: replace(q, up=q.up + 1) if q.up is not None else q,
+        lambda q: replace(q, up=q.up - 1) if q.up is not None else q,
+        lambda q: replace(q, down=q.down + 1) if q.down is not None else q,
+        lambda q: replace(q, down=None),
+        lambda q: replace(q, up=None),
+    ),
+    Truncate: (
+        lambda q: replace(q, divisor=q.divisor + 1),
+        lambda q: Floor(0, q.divisor, 0, False),
+    ),
+    TiesToAway: (
+        lambda q: replace(q, half=q.half + 1),
+        lambda q: replace(q, half=q.half - 1),
+        lambda q: Truncate(q.divisor),
+    ),
 }
 
 
-@pytest.mark.parametrize("fault", WRONG)
-@pytest.mark.parametrize("rounding", ["ties-to-positive", "ties-to-even"])
-def test_a_wrong_plan_is_refused(fault: str, rounding: str) -> None:
-    sizing = sharpen(rounding)
-    plan = direct(sizing)
-    wrong = WRONG[fault](plan)
-    assert wrong != plan
-    with pytest.raises(PlanFaultError):
-        check(wrong, sizing)
+def test_wrong_quotients() -> None:
+    """Every form of quotient in the table, with each of its constants one off, or another form."""
+    tried = dict.fromkeys(QUOTIENTS, 0)
+    for name, spec in cases().items():
+        if not name.endswith(("_shift", "_unit", "_by_25", "_wide", "_half")):
+            continue
+        sizing = analyse(resolve(spec))
+        if sizing.filter.output.bits > 1:
+            kind = type(direct(sizing).steps[-1].value.quotient)
+            for change in QUOTIENTS.get(kind, ()):
+                tried[kind] += refused(name, kind, change)
+    assert min(tried.values()) >= 3
 
 
-@pytest.mark.parametrize(
-    "change",
-    [
-        tail_changed(lambda t: replace(t, remove=0), step=0),
-        lambda p: replace(p, steps=p.steps[::-1]),
-        lambda p: replace(p, steps=p.steps[1:]),
-    ],
+TAILS: tuple[Change, ...] = (
+    lambda t: replace(t, offset=t.offset + 1),
+    lambda t: replace(t, multiplier=2 * t.multiplier),
+    lambda t: replace(t, remove=t.remove + 1),
+    lambda t: replace(t, argument=Interval(t.argument.low, t.argument.high - 1)),
 )
-def test_a_wrong_plan_of_two_passes_is_refused(change: Callable[[Plan], Plan]) -> None:
-    sizing = packaged.sized(TWO_PASSES, Path(), "twice")
-    plan = check(direct(sizing), sizing)
-    with pytest.raises(PlanFaultError):
-        check(change(plan), sizing)
-
-
-REGISTER = """
-[filter]
-name = "narrow"
-[kernel]
-taps = [[1, 2, 1, -1]]
-[input]
-bits = 8
-[accumulator]
-bits = 9
-overflow = "{policy}"
-[output]
-bits = 16
-signed = true
-"""
-
-
-def value_changed(**changes: object) -> Callable[[Plan], Plan]:
-    def apply(tail: Tail) -> Tail:
-        return replace(tail, of=replace(tail.of, **changes))  # type: ignore[arg-type]
-
-    return tail_changed(apply)
-
-
-def reversed_sum(tail: Tail) -> Tail:
-    assert isinstance(tail.of, SaturatingSum)
-    return replace(tail, of=replace(tail.of, groups=tail.of.groups[::-1]))
-
-
-def plain_sum(tail: Tail) -> Tail:
-    inner = tail.of.of if isinstance(tail.of, Field) else tail.of
-    return replace(tail, of=Sum(inner.start, inner.groups, inner.cell))
-
-
-@pytest.mark.parametrize(
-    ("policy", "change"),
-    [
-        ("saturate", value_changed(limits=Interval(-256, 254))),
-        ("saturate", tail_changed(reversed_sum)),
-        ("saturate", tail_changed(plain_sum)),
-        ("wrap", value_changed(bits=10)),
-        ("wrap", value_changed(signed=False)),
-        ("wrap", tail_changed(plain_sum)),
-    ],
+TAILS_THAT_LIMIT: tuple[Change, ...] = (
+    lambda t: replace(t, overflow=None),
+    lambda t: replace(t, limits=_crossed(t, -1, 0)),
+    lambda t: replace(t, limits=_crossed(t, 1, 0)),
+    lambda t: replace(t, limits=_crossed(t, 0, -1)),
+    lambda t: replace(t, limits=_crossed(t, 0, 1)),
 )
-def test_a_register_that_is_another_is_refused(policy: str, change: Callable[[Plan], Plan]) -> None:
-    sizing = packaged.sized(REGISTER.format(policy=policy), Path(), "narrow")
-    plan = check(direct(sizing), sizing)
-    with pytest.raises(PlanFaultError):
-        check(change(plan), sizing)
 
 
-@settings(max_examples=150, deadline=None)
-@given(st.randoms(use_true_random=False))
-def test_plans_of_random_specs_meet_their_obligations(rng: object) -> None:
-    text = randomspecs.random_spec(rng, "random")  # type: ignore[arg-type]
-    try:
-        sizing = packaged.sized(text, Path(), "random")
-    except SpecError:
-        return
+def _crossed(t: Tail, low: int, high: int) -> Interval:
+    """The limits moved, where codes pass them at all."""
+    low = low if t.unlimited.low < t.limits.low - 1 else 0
+    high = high if t.unlimited.high > t.limits.high + 1 else 0
+    return Interval(t.limits.low + low, t.limits.high + high)
+
+
+@pytest.mark.parametrize("name", ["down", "across", "tw_negative_by_25", "out_u8", "clamp_s9"])
+def test_wrong_tails(name: str) -> None:
+    for change in TAILS:
+        assert refused(name, Tail, change) == len(direct(sized(name)).steps)
+
+
+@pytest.mark.parametrize("name", ["down", "across", "tw_negative_by_25", "out_u8"])
+def test_wrong_limits(name: str) -> None:
+    sizing = sized(name)
     plan = direct(sizing)
-    evaluation = evaluate(plan, sizing.filter)
-    assert evaluation.obligations
-    assert all(owed.holds for owed in evaluation.obligations)
+    acting = [step for step in plan.steps if step.value.overflow is not None]
+    tried = 0
+    for step in acting:
+        for change in TAILS_THAT_LIMIT:
+            if change(step.value) != step.value:
+                with pytest.raises(PlanFaultError):
+                    check(with_tail(plan, step, change), sizing)
+                tried += 1
+    assert tried >= 3
+
+
+def with_tail(plan: Plan, step: Step, change: Change) -> Plan:
+    steps = tuple(replace(s, value=change(s.value)) if s == step else s for s in plan.steps)
+    return replace(plan, steps=steps)
+
+
+@pytest.mark.parametrize("name", ["clamp_s9", "clamp_u10", "clamp_wide", "guarded_64"])
+def test_wrong_register_that_saturates(name: str) -> None:
+    changes: tuple[Change, ...] = (
+        lambda s: replace(s, limits=Interval(s.limits.low, s.limits.high - 1)),
+        lambda s: replace(s, limits=Interval(s.limits.low + 1, s.limits.high)),
+        lambda s: replace(s, acts=(False, s.acts[1])),
+        lambda s: replace(s, acts=(s.acts[0], False)),
+        lambda s: replace(s, groups=s.groups[::-1]),
+        lambda s: Sum(s.start, s.groups, s.cell),
+    )
+    value = direct(sized(name)).steps[-1].value.of
+    for change in changes:
+        assert refused(name, SaturatingSum, change) == (change(value) != value)
+
+
+@pytest.mark.parametrize("name", ["wrap_s9", "wrap_u10", "modular_40"])
+def test_wrong_register_that_wraps(name: str) -> None:
+    changes: tuple[Change, ...] = (
+        lambda v: replace(v, bits=v.bits + 1),
+        lambda v: replace(v, bits=v.bits - 1),
+        lambda v: replace(v, signed=not v.signed),
+        lambda v: v.of,
+    )
+    for change in changes:
+        assert refused(name, Field, change) == 1
+
+
+def test_policies_are_not_exchanged() -> None:
+    sizing = sized("clamp_s9")
+    plan = direct(sizing)
+    (step,) = plan.steps
+    value = step.value.of
+    assert isinstance(value, SaturatingSum)
+    wraps = Field(Sum(value.start, value.groups, value.cell), 9, True, Cell(32, True))
+    with pytest.raises(PlanFaultError, match="wraps"):
+        check(replace(plan, steps=(replace(step, value=replace(step.value, of=wraps)),)), sizing)
+
+
+@pytest.mark.parametrize("name", ["constant_value", "black_level", "clamp_video", "reject_video"])
+def test_wrong_loading(name: str) -> None:
+    changes: tuple[Change, ...] = (
+        lambda x: replace(x, pedestal=x.pedestal + 1),
+        lambda x: replace(x, constant=x.constant + 1),
+        lambda x: replace(x, clamp=Interval(17, 234)),
+        lambda x: replace(x, work=Cell(8, True)),
+    )
+    for change in changes:
+        assert refused(name, Load, change) == 1
+
+
+def test_clamping_is_not_forgotten() -> None:
+    assert refused("clamp_video", Load, lambda x: replace(x, clamp=None)) == 1
+
+
+@pytest.mark.parametrize("name", ["down", "across"])
+def test_wrong_order_of_steps(name: str) -> None:
+    sizing = sized(name)
+    plan = direct(sizing)
+    first, second = plan.steps
+    for steps in ((second, first), (first,), (second,), (first, first, second), ()):
+        with pytest.raises(PlanFaultError):
+            check(replace(plan, steps=steps), sizing)
+
+
+def test_rows_out_of_the_ring() -> None:
+    for name in ("edge_constant", "down", "across"):
+        sizing = sized(name)
+        plan = direct(sizing)
+        for other in (
+            replace(plan, top=plan.top + 1),
+            replace(plan, span=(plan.span[0] - 1, plan.span[1])),
+        ):
+            with pytest.raises(PlanFaultError):
+                check(other, sizing)
+
+
+def test_wrap_is_the_only_overflow_without_limits() -> None:
+    """A guard of the changes above: the cases have tails that saturate and that wrap."""
+    met = {
+        step.value.overflow
+        for name in (*EVERYWHERE, "wraps_s8", "one_tap")
+        for step in direct(sized(name)).steps
+    }
+    assert met == {None, Overflow.SATURATE, Overflow.WRAP}

@@ -28,6 +28,12 @@ class AxisText:
     is_illegal: str
     outputs: str
 
+    @property
+    def outputs_as_size(self) -> str:
+        """Return the number of output positions as a size_t."""
+        plain = self.outputs == f"(uint32_t){self.size}"
+        return self.size if plain else f"(size_t){c.grouped(self.outputs)}"
+
 
 @dataclass(frozen=True)
 class GeometryText:
@@ -100,6 +106,8 @@ def _illegal(size: str, limits: tuple[int, int]) -> str:
 def _outputs(size: str, axis: Axis, extent: Extent) -> str:
     """Return ceil((size + growth - phase) / step), 0 if that is negative."""
     more = _growth(axis, extent)
+    if axis.sizes[1] + more <= axis.phase:
+        return "0"
     ahead = axis.step - 1 - axis.phase
     wide = f"(uint32_t){size}"
     if axis.sizes[0] + more >= 0:
