@@ -4,7 +4,6 @@ Property tests draw the same examples in every run, so that a run that fails is 
 change made fail. GUARDBIT_EXPLORE=1 draws new ones, many more of them.
 """
 
-import os
 import sys
 from collections.abc import Callable
 from pathlib import Path
@@ -14,9 +13,11 @@ from hypothesis import settings
 
 sys.path.insert(0, str(Path(__file__).parent))
 
+from tools import EXPLORING, examples
+
 settings.register_profile("steady", derandomize=True)
-settings.register_profile("explore", max_examples=1000, deadline=None)
-settings.load_profile("explore" if os.environ.get("GUARDBIT_EXPLORE") else "steady")
+settings.register_profile("explore", max_examples=examples(100), deadline=None)
+settings.load_profile("explore" if EXPLORING else "steady")
 
 SOFTEN = """\
 [filter]

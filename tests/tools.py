@@ -1,9 +1,16 @@
-"""Programs that some tests need beside a C compiler."""
+"""What tests share: programs that some of them need, and how many examples they draw."""
 
 import os
 import shutil
 
 import pytest
+
+EXPLORING = bool(os.environ.get("GUARDBIT_EXPLORE"))
+
+
+def examples(count: int) -> int:
+    """Return how many examples to draw: `count`, or twenty times as many when exploring."""
+    return 20 * count if EXPLORING else count
 
 
 def needs(*programs: str) -> None:

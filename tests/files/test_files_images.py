@@ -16,6 +16,7 @@ from guardbit.files.npy import npy_bytes
 from guardbit.files.pgm import parse_pgm, pgm_bytes
 from guardbit.model.finding import SpecError
 from guardbit.model.routine import Codes
+from tools import examples
 
 
 def kind_of(data: bytes, name: str) -> str:
@@ -108,7 +109,7 @@ def test_a_hostile_header_is_refused_at_once() -> None:
     st.tuples(st.integers(1, 5), st.integers(1, 5)),
     st.randoms(use_true_random=False),
 )
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=examples(60), deadline=None)
 def test_pgm_there_and_back(maxval: int, shape: tuple[int, int], rng: object) -> None:
     randint = rng.randint  # type: ignore[attr-defined]
     codes = plane(*[[randint(0, maxval) for _ in range(shape[1])] for _ in range(shape[0])])
@@ -246,7 +247,7 @@ def test_npy_with_a_hostile_header(header: str) -> None:
 
 
 @given(st.binary(max_size=80), st.sampled_from(["pgm", "png", "npy", "csv"]))
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=examples(300), deadline=None)
 def test_any_bytes_are_a_kernel_or_a_finding(data: bytes, suffix: str) -> None:
     starts = {
         "pgm": b"P2 2 1 ",

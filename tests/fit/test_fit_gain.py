@@ -14,6 +14,7 @@ from guardbit.fit.apportion import Slots, apportion
 from guardbit.fit.gain import gain, gain_sum, largest_gain_frac
 from guardbit.fit.nearest import nearest, scaled
 from guardbit.fit.symmetry import orbits
+from tools import examples
 
 from .specs import exhaustive_gain, matrix
 
@@ -126,7 +127,7 @@ def slots(draw: st.DrawFn) -> tuple[Slots, int]:
 
 
 @given(slots())
-@settings(max_examples=400, deadline=None)
+@settings(max_examples=examples(400), deadline=None)
 @example((Slots((2, 2, 2, 2, 2), (8, 8, 4, 4, 1), 4, -4, 3), 7))
 @example((Slots((3, 3, 3, 3, 3), (1, 2, 4, 8, 8), 2, -3, 4), 21))
 def test_apportion_equals_exhaustive_search(case: tuple[Slots, int]) -> None:
@@ -147,7 +148,7 @@ TAPS = st.fractions(min_value=-4, max_value=4, max_denominator=40)
 
 
 @given(st.lists(st.lists(TAPS, min_size=3, max_size=3), min_size=1, max_size=5))
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=examples(150), deadline=None)
 def test_sum_is_exact_and_no_exchange_betters_it(rows: list[list[Fraction]]) -> None:
     targets = tuple(map(tuple, rows))
     fitted = gain(targets, -40, 40)

@@ -20,6 +20,7 @@ from guardbit.plan.replay import carry_out
 from guardbit.sizing.analyse import analyse
 from guardbit.sizing.unmet import unmet
 from guardbit.spec.reader import parse_spec
+from tools import examples
 
 
 def drawn(seed: int) -> Sizing | None:
@@ -32,7 +33,7 @@ def drawn(seed: int) -> Sizing | None:
     return None if unmet(sizing) else sizing
 
 
-@settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@settings(max_examples=examples(150), deadline=None, suppress_health_check=[HealthCheck.too_slow])
 @given(st.integers(0, 2**32))
 def test_direct_plans_of_random_filters(seed: int) -> None:
     sizing = drawn(seed)

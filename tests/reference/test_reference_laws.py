@@ -9,11 +9,12 @@ from hypothesis import strategies as st
 
 from guardbit.model.enums import BorderMode, Extent, Grid, Operation
 from guardbit.reference.run import output_positions
+from tools import examples
 
 from .builders import MODES, Array, extended, make, output, pixels, sums, two_passes
 
 SIGNED = pixels(9, signed=True)
-QUICK = settings(max_examples=60, deadline=None)
+QUICK = settings(max_examples=examples(60), deadline=None)
 
 seeds = st.integers(0, 2**32 - 1)
 sides = st.integers(1, 7)

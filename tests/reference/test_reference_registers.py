@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from guardbit.model.enums import BorderMode, Operation, Overflow, Preload, Rounding
 from guardbit.model.filter import Filter
 from guardbit.reference.run import respond
+from tools import examples
 
 from .builders import MODES, Array, extended, frame_of, make, number_range, output, pixels, sums
 from .builders import two_passes as passes
@@ -44,7 +45,7 @@ def add_up(filter: Filter, wide: list[list[int]], row: int, column: int) -> int:
     return held
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=examples(150), deadline=None)
 @given(
     seed=st.integers(0, 2**32 - 1),
     bits=st.sampled_from([2, 3, 7, 8, 9, 15, 16, 17, 31, 32, 33, 63, 64]),

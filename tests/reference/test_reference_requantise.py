@@ -13,6 +13,7 @@ from hypothesis import strategies as st
 from guardbit.model.enums import Overflow, Preload, Rounding
 from guardbit.model.filter import Requantiser
 from guardbit.reference.requantise import requantise
+from tools import examples
 
 from .builders import S32, number_range, pixels
 
@@ -72,7 +73,7 @@ def rounded(value: Fraction, rounding: Rounding) -> int:
 accumulators = st.one_of(st.integers(-300, 300), st.integers(-(2**63), 2**64 - 1))
 
 
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=examples(300), deadline=None)
 @given(
     st.lists(accumulators, min_size=1, max_size=8),
     st.one_of(st.integers(-9, 4), st.integers(-192, 192)),

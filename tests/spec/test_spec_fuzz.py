@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from guardbit.model.finding import Finding, SpecError
 from guardbit.report.words_spec import WORDS
 from guardbit.spec.reader import parse_spec, read_spec
+from tools import EXPLORING, examples
 
 DATA = Path(__file__).parents[1] / "data"
 SPECS = [path.read_bytes() for path in sorted((DATA / "valid").glob("*.toml"))]
@@ -66,15 +67,15 @@ def mutated(rng: random.Random) -> bytes:
 
 
 def test_mutated_specs() -> None:
-    rng = random.Random(2024)
+    rng = random.Random(None if EXPLORING else 2024)
     kinds: set[str] = set()
-    for _ in range(3000):
+    for _ in range(examples(3000)):
         kinds |= {f.kind for f in findings(mutated(rng).decode("utf-8", "surrogateescape"))}
     assert len(kinds) > 30
 
 
 @given(st.binary(max_size=200))
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=examples(200), deadline=None)
 def test_random_bytes_in_a_file(tmp_path_factory: pytest.TempPathFactory, data: bytes) -> None:
     path = tmp_path_factory.mktemp("fuzz") / "a.toml"
     path.write_bytes(data)
@@ -92,7 +93,7 @@ STATEMENTS = st.dictionaries(st.sampled_from(KEYS), VALUE, max_size=5)
 
 
 @given(st.dictionaries(st.sampled_from(TABLES), STATEMENTS, max_size=6))
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=examples(300), deadline=None)
 def test_any_value_at_any_key(tables: dict[str, dict[str, str]]) -> None:
     blocks = [
         "\n".join([f"[{table}]", *(f"{key} = {value}" for key, value in statements.items())])

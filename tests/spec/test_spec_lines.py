@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 from guardbit.model.finding import SpecError
 from guardbit.spec.lines import dotted, scan
 from guardbit.spec.toml import DEPTH_LIMIT, Real, load
+from tools import examples
 
 BARE = st.sampled_from(["a", "b", "c9", "-", "_x", "1"])
 QUOTED = st.sampled_from(['"a"', "'b'", '"x.y"', '"q\\"t"', "'[t]'", '"#"', '""', '"\\u0061z"'])
@@ -71,7 +72,7 @@ def flattened(value: object, path: tuple[str, ...] = ()) -> set[str]:
 
 
 @given(PIECES, st.sampled_from(["\n", "\r\n"]))
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=examples(300), deadline=None)
 def test_lines_of_random_documents(pieces: list[tuple[str, str]], newline: str) -> None:
     """A document grows piece by piece; the keys that a piece adds stand in its lines."""
     text = ""
@@ -139,7 +140,7 @@ def test_lines_by_hand() -> None:
 
 
 @given(st.text(st.sampled_from("ab.=[]{},\"'\\\n\r #1\t"), max_size=60) | st.text(max_size=60))
-@settings(max_examples=500, deadline=None)
+@settings(max_examples=examples(500), deadline=None)
 def test_a_scan_never_fails(text: str) -> None:
     assert all(1 <= line <= text.count("\n") + 1 for line in scan(text).keys.values())
 
