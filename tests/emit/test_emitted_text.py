@@ -26,7 +26,7 @@ from guardbit.reference.run import respond
 from guardbit.sizing.analyse import analyse
 
 from .bench import STRICT, run
-from .table import Tables
+from .parts import Tables
 
 GOLDEN = Path(__file__).with_name("golden")
 ACCEPT = "GUARDBIT_ACCEPT"

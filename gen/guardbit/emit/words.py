@@ -14,7 +14,7 @@ from guardbit.model.enums import (
     Rounding,
 )
 from guardbit.model.filter import Axis, Filter, Pass, PixelFormat, Requantiser
-from guardbit.model.plan import Tail
+from guardbit.model.plan import Tail, Thresholds
 from guardbit.model.sizing import ErrorBound, RegisterSizing, Sizing
 
 MODES = {
@@ -75,7 +75,9 @@ def tail_words(stage: Pass) -> str:
 def tail_comment(stage: Pass, tail: Tail) -> str:
     """Return the comment of the function that requantises."""
     text = f"{tail_words(stage)}. acc is {tail.argument.low} to {tail.argument.high}"
-    if tail.overflow is None and stage.requantiser.overflow is not Overflow.FORBID:
+    if tail.quotient == Thresholds(None, None):
+        text += ", of which every sum gives the same code"
+    elif tail.overflow is None and stage.requantiser.overflow is not Overflow.FORBID:
         text += ", so that no code leaves these limits"
     if tail.remove:
         text += f". The pedestal {tail.remove} is taken off again for the next pass"

@@ -26,6 +26,7 @@ from guardbit.model.sizing import Interval
 from guardbit.plan.cells import INT64, fits, work_cell
 
 _LONGEST = 34
+_LEAST = (-(1 << 31), -(1 << 63))
 
 
 @dataclass(frozen=True)
@@ -124,9 +125,12 @@ def tail(value: Value, argument: Interval, stage: Pass, remove: int) -> tuple[Ta
     numerator, denominator = ratio(r)
     mode = Rounding.TOWARD_NEGATIVE if preloaded else r.rounding
     division = Division(scale(argument, numerator), denominator, mode)
-    form = quotient(division)
     unlimited = unlimited_range(r, preloaded, argument)
     overflow = _overflow(r, unlimited)
+    only = _only_code(r, unlimited, overflow)
+    if only is not None:
+        return _constant(value, argument, remove, only)
+    form = quotient(division)
     early = 0 if overflow is Overflow.WRAP else remove
     less = form.less if isinstance(form, Floor | TiesToEven) else 0
     made = Tail(
@@ -146,6 +150,24 @@ def tail(value: Value, argument: Interval, stage: Pass, remove: int) -> tuple[Ta
     return replace(made, work=work, cell=work), stored(made)
 
 
+def _only_code(r: Requantiser, unlimited: Interval, overflow: Overflow | None) -> int | None:
+    """Return the limit that all codes are held to, if no code is within the limits."""
+    if overflow is Overflow.SATURATE and unlimited.high <= r.to.low:
+        return r.to.low
+    if overflow is Overflow.SATURATE and unlimited.low >= r.to.high:
+        return r.to.high
+    return None
+
+
+def _constant(value: Value, argument: Interval, remove: int, code: int) -> tuple[Tail, Interval]:
+    """Return a tail that makes the same code of every sum."""
+    only = Interval(code - remove, code - remove)
+    work = work_cell((argument, only))
+    nothing = Thresholds(None, None)
+    made = Tail(value, 1, nothing, only.low, None, only, remove, argument, only, work, work)
+    return made, only
+
+
 def _short(r: Requantiser) -> Requantiser:
     """Return a requantiser that makes the same codes and shifts left by no more than it takes.
 
@@ -156,8 +178,12 @@ def _short(r: Requantiser) -> Requantiser:
 
 
 def constants(tail: Tail) -> tuple[Interval, ...]:
-    """Return the numbers that stand in the C of a tail, of which a dividend is none."""
-    made = [Interval(v, v) for v in (tail.multiplier, abs(tail.offset))]
+    """Return the numbers that stand in the C of a tail, of which a dividend is none.
+
+    A negative offset is subtracted, but for the least numbers, which have names in C.
+    """
+    offset = tail.offset if tail.offset in _LEAST else abs(tail.offset)
+    made = [Interval(v, v) for v in (tail.multiplier, offset)]
     if tail.overflow is Overflow.SATURATE:
         if tail.unlimited.low < tail.limits.low:
             made.append(Interval(tail.limits.low, tail.limits.low))
