@@ -1,0 +1,1 @@
+"""Searches over all of the above: goals, fits that are searched, sweeps, overflow in practice."""
