@@ -1,6 +1,7 @@
 """A small spec, and the command run in this process or in one of its own."""
 
 import os
+import signal
 import subprocess
 import sys
 from collections.abc import Callable, Iterator, Mapping
@@ -43,7 +44,10 @@ def start() -> Iterator[Callable[..., "subprocess.Popen[str]"]]:
 
     `env` adds to the environment; `stdout` is a pipe unless a file is given.
     """
+    # a suite that a shell started in the background has SIGINT ignored, and hands that on
+    before = signal.signal(signal.SIGINT, signal.default_int_handler)
     with ExitStack() as stack:
+        stack.callback(signal.signal, signal.SIGINT, before)
 
         def run(
             *arguments: str | Path,
