@@ -34,7 +34,7 @@ extern "C" {
  *                 half), held to 0 to 255
  * output          8-bit unsigned, codes 0 to 255;
  *                 one for each source pixel
- * error           -3.4807 to 3.4846 LSB of the output code against the ideal filter
+ * error           -3.4801 to 3.484 LSB of the output code against the ideal filter
  *
  * These bounds hold only for codes inside the declared range of the source. They are
  * engineering evidence, not the work of a qualified tool: verifying the product stays with

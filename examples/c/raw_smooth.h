@@ -35,7 +35,7 @@ extern "C" {
  *                 64 to 4032
  * output          12-bit unsigned, codes 64 to 4032, 256 stands for zero;
  *                 one for each source pixel
- * error           -1.5923 to 1.5923 LSB of the output code against the ideal filter
+ * error           -1.5922 to 1.5922 LSB of the output code against the ideal filter
  *
  * These bounds hold only for codes inside the declared range of the source. They are
  * engineering evidence, not the work of a qualified tool: verifying the product stays with

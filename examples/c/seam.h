@@ -34,7 +34,7 @@ extern "C" {
  * requantiser     acc / 2^8, rounded toward zero, held to -128 to 127
  * output          8-bit signed, codes -128 to 127;
  *                 one for each source pixel
- * error           -2.9883 to 2.9883 LSB of the output code against the ideal filter,
+ * error           -0.8334 to 0.8334 LSB of the output code against the ideal filter,
  *                 for sources with which no sum leaves its register and no output wraps
  *
  * These bounds hold only for codes inside the declared range of the source. They are

@@ -35,7 +35,7 @@ extern "C" {
  *                 held to 16 to 235
  * output          8-bit unsigned, codes 16 to 235, 16 stands for zero;
  *                 one for each source pixel; 3 interleaved channels
- * error           -0.5 to 0.5 LSB of the output code against the ideal filter
+ * error           -0.25 to 0.5 LSB of the output code against the ideal filter
  *
  * These bounds hold only for codes inside the declared range of the source. They are
  * engineering evidence, not the work of a qualified tool: verifying the product stays with

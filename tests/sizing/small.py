@@ -38,7 +38,6 @@ from guardbit.model.filter import (
     Requantiser,
     Term,
 )
-from guardbit.model.sizing import Witness
 
 Matrix = Sequence[Sequence[int | Fraction]]
 Ints = NDArray[np.int64]
@@ -324,7 +323,7 @@ def run(f: Filter, frames: Ints, size: tuple[int, int]) -> Run:
         else:
             # a tap of zero adds nothing, so nothing is computed for it
             columns = [
-                _middle(f, frames, size, (y + t.dy, x + t.dx), firsts)
+                middle_values(f, frames, size, (y + t.dy, x + t.dx), firsts)
                 if t.integer
                 else np.zeros(len(frames), dtype=np.int64)
                 for t in f.passes[1].kernel.terms
@@ -337,7 +336,7 @@ def run(f: Filter, frames: Ints, size: tuple[int, int]) -> Run:
     return Run(registers, stacked)
 
 
-def _middle(
+def middle_values(
     f: Filter,
     frames: Ints,
     size: tuple[int, int],
@@ -379,20 +378,3 @@ def sizes(f: Filter) -> Iterator[tuple[int, int]]:
 def all_frames(f: Filter, size: tuple[int, int]) -> Ints:
     codes = range(f.input.low, f.input.high + 1)
     return np.array(list(itertools.product(codes, repeat=size[0] * size[1])), dtype=np.int64)
-
-
-def attained(f: Filter, witness: Witness, which: int) -> int:
-    """Return what register number `which` reaches in a witness's frame."""
-    size = (witness.height, witness.width)
-    frame = np.full((1, size[0] * size[1]), witness.fill, dtype=np.int64)
-    for y, x, value in witness.pixels:
-        assert f.input.low <= value <= f.input.high
-        frame[0, y * size[1] + x] = value
-    p = f.passes[which]
-    offsets = [(witness.position[0] + t.dy, witness.position[1] + t.dx) for t in p.kernel.terms]
-    if which == 0:
-        columns = [source_values(f, frame, size, y, x) for y, x in offsets]
-    else:
-        columns = [_middle(f, frame, size, place, {}) for place in offsets]
-    sums, _ = register(p, products(p, columns, 1))
-    return int(sums[0, witness.after])

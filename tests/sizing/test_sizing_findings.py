@@ -14,9 +14,9 @@ from guardbit.report.words_sizing import WORDS
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.sizing.noise import rounding_error
 
+from .shown import attained
 from .small import (
     AUTO,
-    attained,
     axis,
     column_then_row,
     kernel,
@@ -41,6 +41,8 @@ def test_a_narrow_accumulator_is_shown_by_its_frame() -> None:
     assert dict(found.values) == {
         "register": "accumulator", "bits": 12, "needed": 13, "end": "greatest", "value": 4080,
         "limit": 2047, "height": 3, "width": 3, "row": 1, "column": 1, "after": 9,
+        "stage": "output", "final": 4080, "code": 255, "wrapped": -16, "wrapped_code": 0,
+        "saturated": 2047, "saturated_code": 255,
     }  # fmt: skip
     assert made.registers[0].spare == -1
     assert made.registers[0].headroom == Fraction(2047, 4080)
@@ -55,7 +57,10 @@ def test_partial_sums_count_even_where_the_final_fits() -> None:
     assert made.registers[0].partial == Interval(0, 51)
     assert (made.registers[0].bits_forbid, made.registers[0].bits_wrap) == (7, 6)
     (found,) = unmet(made)
-    assert (found.value("needed"), found.value("after")) == (7, 3)
+    assert (found.kind, found.value("needed")) == ("accumulator-too-narrow-wrap", 7)
+    assert found.value("after") == 3
+    # the fill is 16: 3 * 17 - 2 * 16, and 31 - 2 * 16
+    assert [found.value(n) for n in ("final", "wrapped", "saturated")] == [19, 19, -1]
     wraps = analyse(
         plain([(1, 1, 1, -1, -1)], pixels(8, legal=(16, 17)), register(6, Overflow.WRAP))
     )
@@ -203,7 +208,8 @@ def test_rounding_error_of_a_shift(n: int) -> None:
 
 def test_error_of_an_exact_filter_is_its_rounding() -> None:
     made = analyse(plain([(1, 2, 1)], pixels(8), requantiser=to_output(2))).error
-    assert [part.cause for part in made.parts] == ["coefficient fitting", "final rounding"]
+    causes = [part.cause for part in made.parts]
+    assert causes == ["coefficient fitting", "final rounding", "saturation"]
     assert made.parts[1].low == Fraction(-1, 4)
     assert made.parts[1].high == Fraction(1, 2)
 

@@ -13,7 +13,8 @@ from guardbit.model.filter import Accumulator, Filter, PixelFormat
 from guardbit.model.sizing import Interval, RegisterSizing
 from guardbit.sizing.analyse import analyse, unmet
 
-from .small import AUTO, attained, column_then_row, pixels, plain, to_output
+from .shown import attained
+from .small import AUTO, column_then_row, pixels, plain, to_output
 
 FLOOR = Rounding.TOWARD_NEGATIVE
 UNSIGNED = replace(AUTO, signed=False)

@@ -55,3 +55,11 @@ def test_what_is_not_covered_is_said(climbed: tuple[str, dict[str, RungResult]])
         assert "rounding boundaries, and" in said["requantiser"]
     if name == "saturating":
         assert "SciPy" in said["frames"]
+
+
+def test_ends_that_are_held_are_shown_too(climbed: tuple[str, dict[str, RungResult]]) -> None:
+    name, rungs = climbed
+    covered = " ".join(rungs["witnesses"].covered)
+    # 11 bits that wrap: -1024..1023
+    held = "least value held -1024, greatest value held 1023"
+    assert (held in covered) is (name == "saturating")

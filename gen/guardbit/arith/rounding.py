@@ -12,14 +12,15 @@ def round_ratio(numerator: int, denominator: int, mode: Rounding) -> int:
     Directions as in IEEE 754-2019, 4.3.1 and 4.3.2; `ties-to-positive` is the floor of the
     quotient plus one half.
     """
-    floor, rest = divmod(numerator, denominator)
+    floor = numerator // denominator
+    rest = numerator - floor * denominator
     match mode:
         case Rounding.TOWARD_NEGATIVE:
             return floor
         case Rounding.TOWARD_POSITIVE:
             return floor + (rest > 0)
         case Rounding.TOWARD_ZERO:
-            return floor + (rest > 0 and numerator < 0)
+            return floor + ((rest > 0) & (numerator < 0))
         case Rounding.TIES_TO_EVEN:
             return floor + (2 * rest + floor % 2 > denominator)
         case Rounding.TIES_TO_AWAY:

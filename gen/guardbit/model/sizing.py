@@ -27,6 +27,7 @@ class Witness:
     The frame is height x width pixels of code `fill`, except `pixels` = (row, column, code);
     every channel is alike. At output position `position` (row, column, in image coordinates)
     the register named reaches `value` after adding `after` taps (all taps: the final value).
+    It may also name a requantiser, and `value` then is the code that leaves it.
     """
 
     register: str
@@ -61,7 +62,8 @@ class RegisterSizing:
     `bits_wrap` the least width that holds every final value. `headroom` is the ratio of the
     width's limit to the worst case, the lesser of both ends. An unsigned register holds no
     negative sum at any width: then these widths are a signed one's. `held_exact` says that
-    both ends of `held` are attained.
+    both ends of `held` are attained: by `held_witnesses`, or where there is none for an end,
+    by the frame of the final's.
     """
 
     name: str
@@ -80,6 +82,29 @@ class RegisterSizing:
     classes: tuple[ClassRange, ...]
     witnesses: tuple[Witness, ...]
     held_exact: bool = True
+    held_witnesses: tuple[Witness, ...] = ()
+
+
+@dataclass(frozen=True)
+class TapOrder:
+    """What the order of accumulation costs one accumulator, in bits under `forbid`.
+
+    `contract` is what the contract's order needs, `best` what the best order found needs and
+    `floor` what any order needs. `order` is the best one, as numbers of taps, from 1 in the
+    kernel's order, zero taps left out; it is the contract's where that is as good. This is
+    advice for those who may choose: the contract's order is fixed.
+    """
+
+    register: str
+    contract: int
+    best: int
+    floor: int
+    order: tuple[int, ...]
+
+    @property
+    def is_proved_best(self) -> bool:
+        """Return whether no order at all needs fewer bits."""
+        return self.best == self.floor
 
 
 @dataclass(frozen=True)
@@ -87,7 +112,10 @@ class RequantiserSizing:
     """One requantiser: its input, the widest value inside, and what leaves it.
 
     `unlimited` is the rounded value with the pedestal added, before overflow; `bits` holds
-    every value inside (the scaled sum, with its rounding constant, and `unlimited`).
+    every value inside (the scaled sum, with its rounding constant, and `unlimited`). `exact`
+    says that both ends of `unlimited` are attained, by the frames of the register's ends.
+    `output_exact` says so of `output`; where codes wrap, so that the frames of its ends are
+    others, they are `witnesses`.
     """
 
     name: str
@@ -96,6 +124,9 @@ class RequantiserSizing:
     output: Interval
     bits: int
     can_overflow: bool
+    exact: bool = True
+    output_exact: bool = True
+    witnesses: tuple[Witness, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -108,11 +139,50 @@ class ErrorPart:
 
 
 @dataclass(frozen=True)
+class RoundingStatistics:
+    """Mean and variance of what one requantiser's rounding adds, in LSB of its own codes.
+
+    They hold where all `residues` of the exact value, which is a multiple of 1/residues, are
+    equally frequent: a model of busy images, not a bound.
+    """
+
+    name: str
+    residues: int
+    mean: Fraction
+    variance: Fraction
+
+
+@dataclass(frozen=True)
+class DcGain:
+    """The gain of a constant image, in output value per input value: ideal, and as fitted.
+
+    `at_full_scale` is the difference in LSB of the output code at the legal code that is
+    furthest from the pedestal.
+    """
+
+    ideal: Fraction
+    fitted: Fraction
+    at_full_scale: Fraction
+
+    @property
+    def error(self) -> Fraction:
+        """Return fitted - ideal."""
+        return self.fitted - self.ideal
+
+    @property
+    def relative(self) -> Fraction | None:
+        """Return the error over the ideal gain; None where that is zero."""
+        return self.error / self.ideal if self.ideal else None
+
+
+@dataclass(frozen=True)
 class ErrorBound:
     """Output code minus clamped ideal code, in LSB, for every legal input.
 
     When `assumes_no_wrap`, low..high is for inputs with which no accumulator wraps or
-    saturates and no requantiser wraps, and `overall` (low, high) for all legal inputs.
+    saturates and no requantiser wraps, and `overall` (low, high) for all legal inputs. `exact`
+    says that a legal frame attains low, and one high; otherwise they are bounds. Each part is
+    the range of one cause alone; the bound is a joint maximum, not their sum.
     """
 
     low: Fraction
@@ -120,6 +190,9 @@ class ErrorBound:
     parts: tuple[ErrorPart, ...]
     assumes_no_wrap: bool
     overall: tuple[Fraction, Fraction] | None = None
+    exact: bool = False
+    rounding: tuple[RoundingStatistics, ...] = ()
+    gain: DcGain | None = None
 
 
 @dataclass(frozen=True)

@@ -1,9 +1,10 @@
 """Exact range analysis of a filter: every width resolved, with the evidence for it."""
 
-from dataclasses import replace
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
-from guardbit.model.filter import Filter
-from guardbit.model.sizing import RegisterSizing, Sizing
+from guardbit.model.filter import Filter, Pass
+from guardbit.model.sizing import RegisterSizing, RequantiserSizing, Sizing
 from guardbit.sizing.error import error_bound
 from guardbit.sizing.passes import (
     ACCUMULATOR,
@@ -11,15 +12,21 @@ from guardbit.sizing.passes import (
     INTERMEDIATE,
     OUTPUT,
     first_problem,
-    is_preloaded,
     second_problem,
     single_problem,
     stages,
 )
 from guardbit.sizing.register import Register, measure, sized
-from guardbit.sizing.requantisers import size_requantiser
+from guardbit.sizing.requantisers import Requantised, size_requantiser
 from guardbit.sizing.unmet import unmet
-from guardbit.sizing.witness import first_pass_painter, plain_painter, witnesses
+from guardbit.sizing.witness import (
+    Painter,
+    code_witnesses,
+    held_witnesses,
+    plain_painter,
+    result_painter,
+    witnesses,
+)
 
 __all__ = ["analyse", "unmet"]
 
@@ -30,42 +37,62 @@ def analyse(f: Filter) -> Sizing:
     Ranges hold for legal codes. They are exact, with a frame that attains each end, unless
     `exact` says otherwise. A width that "auto" resolves to may exceed 64 bits: `unmet` says so.
     """
-    return _analyse_single(f) if len(f.passes) == 1 else _analyse_two(f)
+    return _sizing(f, measured(f))
 
 
-def _analyse_single(f: Filter) -> Sizing:
+@dataclass(frozen=True)
+class Measured:
+    """A register, whether its pixels' range is exact, how to paint them, and what follows it."""
+
+    register: Register
+    exact: bool
+    paint: Painter
+    requantiser: str
+
+
+def measured(f: Filter) -> tuple[Measured, ...]:
+    """Return the accumulators of a filter, of resolved widths, in the order of its passes."""
+    return _measured_single(f) if len(f.passes) == 1 else _measured_two(f)
+
+
+def _measured_single(f: Filter) -> tuple[Measured, ...]:
     register = measure(ACCUMULATOR, f.passes[0].accumulator, single_problem(f))
-    found = witnesses(f, register, plain_painter(f))
-    return _sizing(f, (register,), (sized(register, True, found),), (OUTPUT,))
+    return (Measured(register, True, plain_painter(f), OUTPUT),)
 
 
-def _analyse_two(f: Filter) -> Sizing:
+def _measured_two(f: Filter) -> tuple[Measured, ...]:
     s = stages(f)
     first = measure(FIRST_ACCUMULATOR, f.passes[0].accumulator, first_problem(f, s))
     results = second_problem(f, s, first)
     second = measure(ACCUMULATOR, f.passes[1].accumulator, results.problem)
-    paint = first_pass_painter(f, first.problem, s.vertical)
-    found = witnesses(f, second, paint) if results.exact else ()
-    rows = (
-        sized(first, True, witnesses(f, first, plain_painter(f))),
-        sized(second, results.exact, found),
+    return (
+        Measured(first, True, plain_painter(f), INTERMEDIATE),
+        Measured(second, results.exact, result_painter(f, s.vertical), OUTPUT),
     )
-    return _sizing(f, (first, second), rows, (INTERMEDIATE, OUTPUT))
 
 
-def _sizing(
-    f: Filter,
-    registers: tuple[Register, ...],
-    rows: tuple[RegisterSizing, ...],
-    names: tuple[str, ...],
-) -> Sizing:
-    requantisers = tuple(
-        size_requantiser(name, p.requantiser, is_preloaded(p), register.held.range)
-        for name, p, register in zip(names, f.passes, registers, strict=True)
-    )
+def _sizing(f: Filter, all_measured: Sequence[Measured]) -> Sizing:
+    registers = tuple(m.register for m in all_measured)
     passes = tuple(
         replace(p, accumulator=register.accumulator)
         for p, register in zip(f.passes, registers, strict=True)
     )
-    error = error_bound(f, registers, requantisers)
-    return Sizing(replace(f, passes=passes), rows, requantisers, error)
+    resolved = replace(f, passes=passes)
+    rows = tuple(_register(resolved, index, m) for index, m in enumerate(all_measured))
+    requantisers = tuple(
+        _requantiser(resolved, p, m) for p, m in zip(passes, all_measured, strict=True)
+    )
+    return Sizing(resolved, rows, requantisers, error_bound(f, registers, requantisers))
+
+
+def _register(f: Filter, index: int, m: Measured) -> RegisterSizing:
+    if not m.exact:
+        return sized(m.register, False, (), ())
+    found = witnesses(f, m.register, m.paint)
+    return sized(m.register, True, found, held_witnesses(f, index, m.register, found, m.paint))
+
+
+def _requantiser(f: Filter, p: Pass, m: Measured) -> RequantiserSizing:
+    made = Requantised(p, m.register, m.exact)
+    found = code_witnesses(f, m.requantiser, made, m.paint)
+    return replace(size_requantiser(m.requantiser, made), witnesses=found)

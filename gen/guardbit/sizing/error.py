@@ -1,28 +1,31 @@
-"""A first bound on the distance between the output and the ideal filter's, by causes.
+"""How far the output can be from the ideal filter's: the error budget.
 
-The ideal filter uses the ideal taps in real arithmetic with the same border. Clamping never
-takes two numbers further apart, so that the causes before it add up to a bound after it.
+The ideal filter uses the ideal taps in real arithmetic with the same border; its code is clamped
+to the legal codes. The bound is the maximum, over all values of the last sum, of the code of that
+value less the least ideal code that goes with it, and so takes fitting, residues of rounding,
+saturation and clamping together. The contributions (`error_parts`) are maxima of their own: they
+do not add up to it.
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Sequence
+from dataclasses import replace
 from fractions import Fraction
-from math import gcd, lcm
 
-from guardbit.arith.intervals import contains, hull
-from guardbit.arith.words import clamp
-from guardbit.model.enums import BorderMode, Extent, Overflow, Rounding
-from guardbit.model.filter import Filter, Pass, Requantiser
-from guardbit.model.sizing import ErrorBound, ErrorPart, Interval, RequantiserSizing
-from guardbit.sizing.held import word_of
-from guardbit.sizing.noise import NOTHING, Span, rounding_error
-from guardbit.sizing.passes import is_preloaded, pixel_values, start_value
+from guardbit.arith.intervals import contains
+from guardbit.model.enums import Overflow
+from guardbit.model.filter import Filter
+from guardbit.model.sizing import ErrorBound, Interval, RequantiserSizing
+from guardbit.sizing.error_choices import Work
+from guardbit.sizing.error_inputs import Cases, cases
+from guardbit.sizing.error_parts import ideal_range, parts
+from guardbit.sizing.error_peaks import WORK, Found, peak
+from guardbit.sizing.error_stairs import Stairs
+from guardbit.sizing.error_statistics import dc_gain, rounding_statistics
+from guardbit.sizing.error_subject import Subject, subject
+from guardbit.sizing.place import word_of
 from guardbit.sizing.register import Register
-from guardbit.sizing.requantisers import legal_codes
 
-FITTING = "coefficient fitting"
-MIDDLE_ROUNDING = "intermediate rounding"
-MIDDLE_SATURATION = "intermediate saturation"
-FINAL_ROUNDING = "final rounding"
+Span = tuple[int, int]
 
 
 def error_bound(
@@ -33,30 +36,34 @@ def error_bound(
     It holds for every legal input; if an accumulator can wrap or saturate, or a requantiser
     wrap, for every input with which none does, and `overall` then for all.
     """
-    fitting, ideal = _fitting(f)
-    causes = {FITTING: fitting}
-    if len(f.passes) == 2:
-        causes[MIDDLE_ROUNDING] = _middle(f, _rounding(f.passes[0], registers[0]))
-        causes[MIDDLE_SATURATION] = _middle(f, _saturation(f.passes[0], requantisers[0]))
-    causes[FINAL_ROUNDING] = _rounding(f.passes[-1], registers[-1])
-    total = sum(causes.values(), NOTHING)
-    codes = legal_codes(f.output)
-    if requantisers[-1].can_overflow or ideal.low < codes.low or ideal.high > codes.high:
-        total = total.joined(NOTHING)
-    assumes = any(map(_acts, registers)) or any(
+    resolved = _resolved(f, registers)
+    found = cases(resolved)
+    acts = any(map(_acts, registers)) or any(
         r.can_overflow and p.requantiser.overflow is not Overflow.SATURATE
         for p, r in zip(f.passes, requantisers, strict=True)
     )
-    parts = tuple(ErrorPart(cause, span.low, span.high) for cause, span in causes.items())
-    overall = _overall(codes, requantisers[-1].output, ideal) if assumes else None
-    return ErrorBound(total.low, total.high, parts, assumes, overall)
+    overall = _overall(resolved, found, registers, requantisers) if acts else None
+    ends = [_furthest(resolved, found, sign, _quiet) for sign in (-1, 1)]
+    low, high = (end.value if end else None for end in ends)
+    bounds = overall or (Fraction(0), Fraction(0))
+    clamps = any(r.accumulator.overflow is Overflow.SATURATE and _acts(r) for r in registers)
+    return ErrorBound(
+        low=bounds[0] if low is None else -low,
+        high=bounds[1] if high is None else high,
+        parts=parts(resolved, found),
+        assumes_no_wrap=acts,
+        overall=overall,
+        exact=found.exact and not clamps and all(end is not None and end.exact for end in ends),
+        rounding=rounding_statistics(resolved, registers),
+        gain=dc_gain(resolved),
+    )
 
 
-def _overall(codes: Interval, output: Interval, ideal: Span) -> tuple[Fraction, Fraction]:
-    """Return the bound from both ranges alone."""
-    low, high = (min(max(end, Fraction(codes.low)), Fraction(codes.high)) for end in
-                 (ideal.low, ideal.high))  # fmt: skip
-    return output.low - high, output.high - low
+def _resolved(f: Filter, registers: Sequence[Register]) -> Filter:
+    passes = (
+        replace(p, accumulator=r.accumulator) for p, r in zip(f.passes, registers, strict=True)
+    )
+    return replace(f, passes=tuple(passes))
 
 
 def _acts(register: Register) -> bool:
@@ -65,83 +72,107 @@ def _acts(register: Register) -> bool:
     return not contains(word_of(register.accumulator), register.found.interval(not wraps))
 
 
-def _factor(r: Requantiser) -> Fraction:
-    return Fraction(2) ** r.exponent / r.divisor
+Choice = Callable[[Subject], tuple[Stairs, Span] | None]
 
 
-def _fitting(f: Filter) -> tuple[Span, Span]:
-    """Return the ranges of (fitted - ideal) value and of the ideal code, in LSB.
+def _quiet(s: Subject) -> tuple[Stairs, Span] | None:
+    """Return the stairs, and the sums with which neither register nor code wraps or clamps."""
+    span = s.stairs.quiet()
+    return None if span is None else (s.stairs, span)
 
-    A constant border value outside the legal range counts as one that a pixel can take.
+
+def _furthest(f: Filter, found: Cases, sign: int, choose: Choice) -> Found | None:
+    """Return the greatest sign * error over all cases; None if there is nothing to choose."""
+    count = len(found.items)
+    work, best = Work(WORK.list // count, WORK.table // count), None
+    for case in found.items:
+        s = subject(f, case, sign)
+        chosen = choose(s) if s is not None else None
+        if s is not None and chosen is not None:
+            one = peak(s, *chosen, work, best.value if best else None)
+            best = max(filter(None, (best, one)), key=_rank, default=None)
+    return best
+
+
+def _rank(found: Found) -> tuple[Fraction, bool]:
+    return found.value, found.exact
+
+
+def _overall(
+    f: Filter,
+    found: Cases,
+    registers: Sequence[Register],
+    requantisers: Sequence[RequantiserSizing],
+) -> tuple[Fraction, Fraction]:
+    """Return the bound for all legal inputs: from both ranges alone, or by a search if closer."""
+    alone = _apart(f, found, requantisers[-1].output)
+    choose = _unquiet(f, registers, requantisers)
+    if choose is None:
+        return alone
+    least, greatest = (_furthest(f, found, sign, choose) for sign in (-1, 1))
+    if least is None or greatest is None:
+        return alone
+    return max(alone[0], -least.value), min(alone[1], greatest.value)
+
+
+def _apart(f: Filter, found: Cases, codes: Interval) -> tuple[Fraction, Fraction]:
+    """Return the bound from both ranges alone."""
+    ideal = ideal_range(f, found)
+    low, high = (
+        min(max(end, Fraction(f.output.low)), Fraction(f.output.high))
+        for end in (ideal.low, ideal.high)
+    )
+    return codes.low - high, codes.high - low
+
+
+def _unquiet(
+    f: Filter, registers: Sequence[Register], requantisers: Sequence[RequantiserSizing]
+) -> Choice | None:
+    """Return how to search over all inputs; None where results are not a function of the sum."""
+    inner = zip(f.passes, registers, requantisers, strict=True)
+    for p, register, requantiser in list(inner)[:-1]:
+        clamps = p.requantiser.overflow is Overflow.SATURATE
+        if _acts(register) or (requantiser.can_overflow and not clamps):
+            return None
+    last, output = registers[-1], f.passes[-1].requantiser.overflow
+    broken = requantisers[-1].can_overflow and output is Overflow.FORBID
+    match last.accumulator.overflow:
+        case _ if broken:
+            return None
+        case _ if not _acts(last):
+            return _everything
+        case Overflow.WRAP:
+            return _everything
+        case Overflow.SATURATE if output is not Overflow.WRAP:
+            return _clamping(last)
+    return None
+
+
+def _everything(s: Subject) -> tuple[Stairs, Span]:
+    return s.stairs, (0, s.stairs.last)
+
+
+def _clamping(register: Register) -> Choice:
+    """Return how to search where the register clamps sums.
+
+    What it holds exceeds the sum by no more than partial sums fall below its word, since a
+    clamp at the upper end only lowers it and one at the lower end only makes good what is
+    missing there (the reflection map of A. V. Skorokhod, Theory of Probability and its
+    Applications 6, 1961); the other way round likewise.
     """
-    fitted, ideal = _common(f, fitted=True), _common(f, fitted=False)
-    pixels = pixel_values(f.input)
-    if f.border.mode is BorderMode.CONSTANT and f.geometry.extent is not Extent.VALID:
-        constant = f.border.value - f.input.pedestal
-        pixels = hull([pixels, Interval(constant, constant)])
-    differences = [a * ideal[1] - b * fitted[1] for a, b in zip(fitted[0], ideal[0], strict=True)]
-    fit = _sum(differences, pixels, fitted[1] * ideal[1])
-    codes = _sum(ideal[0], pixels, ideal[1])
-    pedestal = Fraction(f.output.pedestal)
-    return fit, codes + Span(pedestal, pedestal)
+    word, partial, held = (
+        word_of(register.accumulator),
+        register.found.interval(True),
+        register.held,
+    )
 
+    def choose(s: Subject) -> tuple[Stairs, Span]:
+        if s.sign > 0:
+            moved = max(0, word.low - partial.low)
+            limits = Interval(min(partial.low, word.low), held.range.high)
+        else:
+            moved = -max(0, partial.high - word.high)
+            limits = Interval(held.range.low, max(partial.high, word.high))
+        return replace(s.stairs, word=None, moved=moved, held=limits), (0, s.stairs.last)
 
-def _sum(weights: Iterable[int], pixels: Interval, denominator: int) -> Span:
-    """Return the range of the sum of weights times free pixels, over the denominator."""
-    positive = negative = 0
-    for weight in weights:
-        positive += max(weight, 0)
-        negative += min(weight, 0)
-    low = positive * pixels.low + negative * pixels.high
-    high = positive * pixels.high + negative * pixels.low
-    return Span(Fraction(low, denominator), Fraction(high, denominator))
-
-
-def _common(f: Filter, *, fitted: bool) -> tuple[list[int], int]:
-    """Return the whole filter's taps, in LSB per step of a pixel, over one denominator."""
-    scale = Fraction(2) ** (f.output.frac - f.input.frac)
-    taps, denominator = [1], 1
-    for p in f.passes:
-        unit = _factor(p.requantiser)
-        exact = [t.integer * unit if fitted else t.ideal for t in p.kernel.terms]
-        common = lcm(*(tap.denominator for tap in exact))
-        whole = [tap.numerator * (common // tap.denominator) for tap in exact]
-        taps = [a * b for a in taps for b in whole]
-        denominator *= common
-    if fitted:
-        return taps, denominator
-    return [tap * scale.numerator for tap in taps], denominator * scale.denominator
-
-
-def _rounding(p: Pass, register: Register) -> Span:
-    """Return the range of what the requantiser's rounding adds, in its LSB.
-
-    The sum less its start value is a multiple of the greatest common divisor of the taps. A
-    rounding constant at the start and a floor round as ties-to-positive.
-    """
-    common = gcd(*(tap.coefficient for tap in register.problem.taps))
-    if common == 0:
-        return NOTHING
-    final, start = register.found.interval(False), start_value(p)
-    mode = Rounding.TIES_TO_POSITIVE if is_preloaded(p) else p.requantiser.rounding
-    low, high = (final.low - start) // common, (final.high - start) // common
-    return rounding_error(mode, _factor(p.requantiser) * common, low, high)
-
-
-def _saturation(p: Pass, r: RequantiserSizing) -> Span:
-    """Return the range of what clamping to the intermediate format adds, in its LSB."""
-    if p.requantiser.overflow is not Overflow.SATURATE:
-        return NOTHING
-    codes = legal_codes(p.requantiser.to)
-    ends = (clamp(v, codes.low, codes.high) - v for v in (r.unlimited.high, r.unlimited.low))
-    low, high = ends
-    return Span(Fraction(min(low, 0)), Fraction(max(high, 0)))
-
-
-def _middle(f: Filter, error: Span) -> Span:
-    """Return what an error of every intermediate value amounts to at the output."""
-    second = f.passes[1]
-    unit = _factor(second.requantiser)
-    positive = sum(t.integer for t in second.kernel.terms if t.integer > 0)
-    negative = sum(t.integer for t in second.kernel.terms if t.integer < 0)
-    return error.scaled(positive * unit) + error.scaled(negative * unit)
+    return choose

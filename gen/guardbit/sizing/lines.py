@@ -1,15 +1,35 @@
 """Border classes of one axis, as the analysis walks over them."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Protocol
 
 from guardbit.arith.borders import read_index
 from guardbit.arith.classes import Pattern, axis_patterns
 from guardbit.model.enums import BorderMode
 from guardbit.model.filter import Axis, Filter
 from guardbit.model.sizing import Interval
+from guardbit.sizing.reach import Reach
 
 ROW, COLUMN = "row", "column"
+
+
+class Origin(Protocol):
+    """Where pixels come from that are results of a first pass."""
+
+    @property
+    def reach(self) -> Reach | None:
+        """Return all values that a pixel takes, less its pedestal; None: too many to list."""
+        ...
+
+    @property
+    def is_interior(self) -> bool:
+        """Return whether no read of the first pass leaves the image."""
+        ...
+
+    def pixels(self, value: int) -> Mapping[tuple[int, int], int] | None:
+        """Return pixels of the first pass that make `value`; None: not searched."""
+        ...
 
 
 @dataclass(frozen=True)
@@ -19,7 +39,7 @@ class Line:
     `read` gives the image index that an offset reads there, None for the constant. `before`
     and `after` count the offsets that read before and behind the image. `values`, where set,
     is the range of the pixels (less their pedestal) at positions of this class, which are
-    results of a first pass in class `first`.
+    `results` of a first pass.
     """
 
     label: str
@@ -29,7 +49,7 @@ class Line:
     after: int
     read: Callable[[int], int | None]
     values: Interval | None = None
-    first: "Line | None" = None
+    results: "Origin | None" = None
 
     @property
     def is_interior(self) -> bool:

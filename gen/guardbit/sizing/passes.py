@@ -3,12 +3,12 @@
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
-from guardbit.arith.intervals import contains, requantised_range, shift, unlimited_range
+from guardbit.arith.intervals import clamp_to, contains, requantised_range, shift
 from guardbit.arith.rounding import requantise, rounding_constant
-from guardbit.model.enums import Overflow, Preload
-from guardbit.model.filter import Filter, Kernel, Pass, PixelFormat, Requantiser
+from guardbit.model.enums import BorderMode, Preload
+from guardbit.model.filter import Filter, Kernel, Pass, PixelFormat
 from guardbit.model.sizing import Interval
-from guardbit.sizing.held import held_in_class
+from guardbit.sizing.clamping import END_WORK
 from guardbit.sizing.lines import (
     COLUMN,
     ROW,
@@ -17,8 +17,10 @@ from guardbit.sizing.lines import (
     constant_value,
     crossing_lines,
 )
+from guardbit.sizing.place import Place
 from guardbit.sizing.problem import Problem, Tap
 from guardbit.sizing.register import Register
+from guardbit.sizing.results import Results
 from guardbit.sizing.survey import EXACT_WORK, REPORT_WORK, interior_class
 
 ACCUMULATOR, FIRST_ACCUMULATOR = "accumulator", "intermediate.accumulator"
@@ -61,12 +63,27 @@ def _offsets(taps: Sequence[Tap], word: str) -> list[int]:
     return sorted({t.dy if word == ROW else t.dx for t in taps} or {0})
 
 
+def is_nested(f: Filter) -> bool:
+    """Return whether reads outside the image give nothing that a legal pixel could not."""
+    return f.border.mode is not BorderMode.CONSTANT or (
+        f.input.low <= f.border.value <= f.input.high
+    )
+
+
 def _problem(
-    p: Pass, constant: int | None, rows: Sequence[Line], columns: Sequence[Line]
+    f: Filter, p: Pass, constant: int | None, rows: Sequence[Line], columns: Sequence[Line]
 ) -> Problem:
-    kernel, values = p.kernel, pixel_values(p.source)
-    taps = taps_of(kernel)
-    return Problem(len(kernel.terms), taps, start_value(p), values, constant, rows, columns)
+    return Problem(
+        len(p.kernel.terms),
+        taps_of(p.kernel),
+        start_value(p),
+        pixel_values(p.source),
+        constant,
+        rows,
+        columns,
+        is_nested(f),
+        (rows, columns),
+    )
 
 
 def single_problem(f: Filter) -> Problem:
@@ -74,7 +91,7 @@ def single_problem(f: Filter) -> Problem:
     taps = taps_of(f.passes[0].kernel)
     rows = axis_lines(f, ROW, _offsets(taps, ROW))
     columns = axis_lines(f, COLUMN, _offsets(taps, COLUMN))
-    return _problem(f.passes[0], constant_value(f), rows, columns)
+    return _problem(f, f.passes[0], constant_value(f), rows, columns)
 
 
 @dataclass(frozen=True)
@@ -86,8 +103,14 @@ class Stages:
     along_second: Sequence[Line]
     across_first: Sequence[Line]
 
-    def placed(self, first: Sequence[Line], second: Sequence[Line]) -> tuple[Sequence[Line], ...]:
+    def placed(
+        self, first: Sequence[Line], second: Sequence[Line]
+    ) -> tuple[Sequence[Line], Sequence[Line]]:
         """Return (rows, columns) of lines along the first and along the second pass."""
+        return (first, second) if self.vertical else (second, first)
+
+    def placed_pair(self, first: Line, second: Line) -> tuple[Line, Line]:
+        """Return (row, column) of a line along the first and one along the second pass."""
         return (first, second) if self.vertical else (second, first)
 
 
@@ -105,7 +128,7 @@ def stages(f: Filter) -> Stages:
 def first_problem(f: Filter, s: Stages) -> Problem:
     """Return the first pass's problem, over the positions that the second pass reads."""
     rows, columns = s.placed(s.along_first, s.across_first)
-    return _problem(f.passes[0], constant_value(f), rows, columns)
+    return _problem(f, f.passes[0], constant_value(f), rows, columns)
 
 
 @dataclass(frozen=True)
@@ -123,9 +146,10 @@ def second_problem(f: Filter, s: Stages, first: Register) -> SecondProblem:
     """
     lines, exact = _result_lines(f, s, first)
     constant = None if constant_value(f) is None else _outside_result(f, s, first)
-    rows, columns = s.placed(lines, s.along_second)
-    problem = _problem(f.passes[1], constant, rows, columns)
-    return SecondProblem(problem, exact)
+    rows, columns = s.placed(_undominated(lines), s.along_second)
+    problem = _problem(f, f.passes[1], constant, rows, columns)
+    listed = s.placed(lines, s.along_second) if len(lines) == len(s.along_first) else None
+    return SecondProblem(replace(problem, listed=listed), exact)
 
 
 def _result_lines(f: Filter, s: Stages, first: Register) -> tuple[list[Line], bool]:
@@ -135,20 +159,46 @@ def _result_lines(f: Filter, s: Stages, first: Register) -> tuple[list[Line], bo
     )
     lines = _affordable(s, first)
     if across is None or not lines:
-        values = _results(f, first.held.range)
+        values = _codes(f, first.held.range)
         return [Line("interior", 1, 0, 0, 0, lambda _: 0, values)], False
-    made, exact = [], True
-    for line in lines:
-        row, column = (line, across) if s.vertical else (across, line)
-        held = held_in_class(first.accumulator, first.problem, row, column)
-        exact = exact and held.exact and _is_monotone(f.passes[0], held.range)
-        made.append(_result_line(line, _results(f, held.range)))
-    return _undominated(made), exact
+    results = _searched(f, s, first, lines, across)
+    inner = next((r for line, r in zip(lines, results, strict=True) if line.is_interior), None)
+    if inner is not None and is_nested(f):
+        # what is only a bound elsewhere cannot leave what the interior's results are
+        limits = inner.held.range
+        made = [_result_line(a, r, limits) for a, r in zip(lines, results, strict=True)]
+        return made, inner.held.exact
+    made = [_result_line(a, r, r.held.range) for a, r in zip(lines, results, strict=True)]
+    sure = [r.held.range for r in results if r.held.exact]
+    return made, all(any(contains(a, r.held.range) for a in sure) for r in results)
 
 
-def _result_line(first: Line, values: Interval) -> Line:
+def _searched(
+    f: Filter, s: Stages, first: Register, lines: Sequence[Line], across: Line
+) -> list[Results]:
+    """Return the results in each class; a search for them gets its share of the work.
+
+    Where the interior decides, the others are for the report only.
+    """
+    nested = is_nested(f) and any(line.is_interior for line in lines)
+    share = END_WORK // (8 * len(lines)) if nested else END_WORK // len(lines)
+    works = [END_WORK if nested and line.is_interior else share for line in lines]
+    return [
+        _results(f, first, *s.placed_pair(line, across), work)
+        for line, work in zip(lines, works, strict=True)
+    ]
+
+
+def _results(f: Filter, first: Register, row: Line, column: Line, work: int) -> Results:
+    p = f.passes[0]
+    place = Place(first.accumulator, first.problem, row, column, work)
+    return Results(place, p.requantiser, is_preloaded(p))
+
+
+def _result_line(first: Line, results: Results, limits: Interval) -> Line:
     """Return the class as the second pass sees it: results, none of them outside."""
-    return replace(first, before=0, after=0, read=lambda _: 0, values=values, first=first)
+    values = clamp_to(results.held.range, limits)
+    return replace(first, before=0, after=0, read=lambda _: 0, values=values, results=results)
 
 
 def _affordable(s: Stages, first: Register) -> Sequence[Line]:
@@ -181,21 +231,11 @@ def _within(inner: Line, outer: Line) -> bool:
     return contains(outer.values, inner.values)
 
 
-def _results(f: Filter, held: Interval) -> Interval:
+def _codes(f: Filter, held: Interval) -> Interval:
     """Return the codes that the first pass makes of `held`, less their pedestal."""
     p = f.passes[0]
     codes = requantised_range(p.requantiser, is_preloaded(p), held)
     return shift(codes, -p.requantiser.to.pedestal)
-
-
-def _is_monotone(p: Pass, argument: Interval) -> bool:
-    """Return whether the requantiser keeps the order of all of `argument`."""
-    r: Requantiser = p.requantiser
-    if r.overflow is not Overflow.WRAP:
-        return True
-    values = unlimited_range(r, is_preloaded(p), argument)
-    low = r.to.low
-    return (values.low - low) >> r.to.bits == (values.high - low) >> r.to.bits
 
 
 def _outside_result(f: Filter, s: Stages, first: Register) -> int:
@@ -203,8 +243,7 @@ def _outside_result(f: Filter, s: Stages, first: Register) -> int:
     outside = next((a for a in s.across_first if not a.is_interior), None)
     if outside is None or not s.along_first:
         return 0
-    line = s.along_first[0]
-    row, column = (line, outside) if s.vertical else (outside, line)
-    value = held_in_class(first.accumulator, first.problem, row, column).range.low
+    row, column = s.placed_pair(s.along_first[0], outside)
+    value = Place(first.accumulator, first.problem, row, column).held.range.low
     p = f.passes[0]
     return requantise(p.requantiser, is_preloaded(p), value) - p.requantiser.to.pedestal

@@ -24,6 +24,9 @@ class Problem:
 
     `values` is the range of a pixel less its pedestal, `constant` the border's fixed one
     (None: the border repeats pixels). `count` is the number of taps, zero ones included.
+    `nested`: what an interior class can do includes what any other can, since the border
+    repeats pixels or its constant is a legal one. `listed` holds all rows and columns where
+    `rows` and `columns` leave out such whose sums lie between another's ends; None: unknown.
     """
 
     count: int
@@ -33,6 +36,8 @@ class Problem:
     constant: int | None
     rows: Sequence[Line]
     columns: Sequence[Line]
+    nested: bool
+    listed: tuple[Sequence[Line], Sequence[Line]] | None
 
     def values_at(self, row: Line, column: Line) -> Interval:
         """Return the range of the pixels that are read in a class."""
@@ -57,6 +62,11 @@ class Extreme:
 
 
 Ends = dict[Mark, Extreme]
+
+
+def ends_interval(ends: Ends, partial: bool) -> Interval:
+    """Return the range between both ends."""
+    return Interval(ends[partial, End.LEAST].value, ends[partial, End.GREATEST].value)
 
 
 def further(mark: Mark, a: Extreme, b: Extreme) -> Extreme:

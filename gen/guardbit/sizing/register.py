@@ -8,7 +8,8 @@ from guardbit.arith.words import bits_needed, format_range
 from guardbit.model.enums import Overflow
 from guardbit.model.filter import Accumulator
 from guardbit.model.sizing import Interval, RegisterSizing, Witness
-from guardbit.sizing.held import Held, held
+from guardbit.sizing.held import Holding
+from guardbit.sizing.place import Held
 from guardbit.sizing.problem import Problem, any_values
 from guardbit.sizing.survey import Survey, class_ranges, survey
 
@@ -23,7 +24,12 @@ class Register:
     accumulator: Accumulator
     problem: Problem
     found: Survey
-    held: Held
+    holding: Holding
+
+    @property
+    def held(self) -> Held:
+        """Return the range of what it holds at the end."""
+        return self.holding.held
 
 
 def measure(name: str, accumulator: Accumulator, problem: Problem) -> Register:
@@ -31,7 +37,7 @@ def measure(name: str, accumulator: Accumulator, problem: Problem) -> Register:
     found = survey(problem)
     bits = accumulator.bits or width(found.interval(True), accumulator.signed)
     resolved = replace(accumulator, bits=bits)
-    return Register(name, resolved, problem, found, held(resolved, problem, found))
+    return Register(name, resolved, problem, found, Holding(resolved, problem, found))
 
 
 def width(values: Interval, signed: bool) -> int:
@@ -44,7 +50,9 @@ def width(values: Interval, signed: bool) -> int:
     return max(needed, LEAST_BITS)
 
 
-def sized(register: Register, exact: bool, witnesses: Sequence[Witness]) -> RegisterSizing:
+def sized(
+    register: Register, exact: bool, witnesses: Sequence[Witness], held_witnesses: Sequence[Witness]
+) -> RegisterSizing:
     """Return the sizing of a register; `exact` says whether its pixels' range is."""
     final, partial = register.found.interval(False), register.found.interval(True)
     accumulator = register.accumulator
@@ -69,6 +77,7 @@ def sized(register: Register, exact: bool, witnesses: Sequence[Witness]) -> Regi
         classes=class_ranges(register.found),
         witnesses=tuple(witnesses),
         held_exact=exact and register.held.exact,
+        held_witnesses=tuple(held_witnesses),
     )
 
 

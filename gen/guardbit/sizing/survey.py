@@ -10,7 +10,7 @@ from dataclasses import dataclass, replace
 from itertools import product
 
 from guardbit.arith.intervals import contains
-from guardbit.model.sizing import ClassRange, End, Interval
+from guardbit.model.sizing import ClassRange, Interval
 from guardbit.sizing.lines import COLUMN, ROW, Line
 from guardbit.sizing.problem import (
     MARKS,
@@ -18,6 +18,7 @@ from guardbit.sizing.problem import (
     Problem,
     bound_ends,
     class_ends,
+    ends_interval,
     ends_of_reads,
     further,
     reads_of,
@@ -40,11 +41,6 @@ class Survey:
     def interval(self, partial: bool) -> Interval:
         """Return the range of the final or of all partial sums."""
         return ends_interval(self.ends, partial)
-
-
-def ends_interval(ends: Ends, partial: bool) -> Interval:
-    """Return the range between both ends."""
-    return Interval(ends[partial, End.LEAST].value, ends[partial, End.GREATEST].value)
 
 
 def survey(problem: Problem) -> Survey:

@@ -1,13 +1,15 @@
 """What the sizing shows that the contract forbids."""
 
 from collections.abc import Iterator
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
+from guardbit.arith.intervals import contains
 from guardbit.arith.words import bits_needed, format_range
 from guardbit.model.enums import Overflow
-from guardbit.model.filter import Accumulator, Pass
+from guardbit.model.filter import Filter, Pass
 from guardbit.model.finding import Finding, Place, Value, finding
 from guardbit.model.sizing import End, Interval, RegisterSizing, RequantiserSizing, Sizing, Witness
+from guardbit.sizing.outcome import outcome
 from guardbit.sizing.passes import pixel_values
 from guardbit.sizing.requantisers import output_limits
 
@@ -20,40 +22,64 @@ def unmet(sizing: Sizing, place: Place | None = None) -> tuple[Finding, ...]:
     Each place is `place` (the spec file) with the key that the finding is about.
     """
     found: list[Finding] = []
-    stages = zip(sizing.filter.passes, sizing.registers, sizing.requantisers, strict=True)
-    for p, register, requantiser in stages:
-        here = replace(place or Place(), key=f"{register.name}.bits")
-        there = replace(place or Place(), key=f"{requantiser.name}.overflow")
-        found += _register(p, register, here)
-        found += _requantiser(p, register, requantiser, there)
+    for stage in _stages(sizing):
+        here = replace(place or Place(), key=f"{stage.register.name}.bits")
+        there = replace(place or Place(), key=f"{stage.requantiser.name}.overflow")
+        found += _register(stage, here)
+        found += _requantiser(stage.its_pass, stage.register, stage.requantiser, there)
     return tuple(found)
 
 
-def _register(p: Pass, r: RegisterSizing, place: Place) -> Iterator[Finding]:
-    accumulator = p.accumulator
+@dataclass(frozen=True)
+class Stage:
+    """One pass of a filter of resolved widths, by its index, and how it is sized."""
+
+    filter: Filter
+    index: int
+    register: RegisterSizing
+    requantiser: RequantiserSizing
+
+    @property
+    def its_pass(self) -> Pass:
+        """Return the pass."""
+        return self.filter.passes[self.index]
+
+
+def _stages(sizing: Sizing) -> Iterator[Stage]:
+    for index, pair in enumerate(zip(sizing.registers, sizing.requantisers, strict=True)):
+        yield Stage(sizing.filter, index, *pair)
+
+
+def _register(stage: Stage, place: Place) -> Iterator[Finding]:
+    r, overflow = stage.register, stage.its_pass.accumulator.overflow
     if r.bits > WIDEST:
         yield finding("accumulator-over-64", place, register=r.name, needed=r.bits)
-    elif accumulator.overflow is Overflow.FORBID:
-        yield from _forbidden(accumulator, r, place)
-    if accumulator.overflow is Overflow.SATURATE:
-        yield from _products(p, r, place)
+    elif overflow is Overflow.FORBID:
+        yield from _forbidden(stage, place)
+    if overflow is Overflow.SATURATE:
+        yield from _products(stage.its_pass, r, place)
 
 
-def _forbidden(accumulator: Accumulator, r: RegisterSizing, place: Place) -> Iterator[Finding]:
-    word = format_range(r.bits, accumulator.signed)
+def _forbidden(stage: Stage, place: Place) -> Iterator[Finding]:
+    r = stage.register
+    word = format_range(r.bits, r.signed)
     # the end that needs more bits is the one that leaves the word if any does
     low_is_worse = ~r.partial.low >= r.partial.high
-    if not accumulator.signed and r.partial.low < 0:
+    if not r.signed and r.partial.low < 0:
         key = place.key and place.key.replace(".bits", ".signed")
-        yield _exceeded("accumulator-negative", replace(place, key=key), r, End.LEAST, 0)
+        yield _exceeded(stage, "accumulator-negative", replace(place, key=key), End.LEAST, 0)
     elif low_is_worse and r.partial.low < word.low:
-        yield _exceeded("accumulator-too-narrow", place, r, End.LEAST, word.low)
+        yield _exceeded(stage, "accumulator-too-narrow", place, End.LEAST, word.low)
     elif r.partial.high > word.high:
-        yield _exceeded("accumulator-too-narrow", place, r, End.GREATEST, word.high)
+        yield _exceeded(stage, "accumulator-too-narrow", place, End.GREATEST, word.high)
 
 
-def _exceeded(kind: str, place: Place, r: RegisterSizing, end: End, limit: int) -> Finding:
-    """Return the finding with the frame that shows it, or of kind "...-bound" without one."""
+def _exceeded(stage: Stage, kind: str, place: Place, end: End, limit: int) -> Finding:
+    """Return the finding with the frame that shows it, or of kind "...-bound" without one.
+
+    Its kind ends in "-wrap" where a register that wraps would do at that width.
+    """
+    r, word = stage.register, format_range(stage.register.bits, stage.register.signed)
     value = r.partial.low if end is End.LEAST else r.partial.high
     common: dict[str, Value] = {
         "register": r.name,
@@ -65,7 +91,27 @@ def _exceeded(kind: str, place: Place, r: RegisterSizing, end: End, limit: int) 
     common |= {"value": value, "limit": limit}
     if witness is None:
         return finding(f"{kind}-bound", place, **common)
-    return finding(kind, place, **common, **_frame(witness))
+    values = common | _frame(witness) | _outcomes(stage, witness)
+    if contains(word, r.final):
+        return finding(f"{kind}-wrap", place, **values)
+    return finding(kind, place, **values)
+
+
+def _outcomes(stage: Stage, witness: Witness) -> dict[str, Value]:
+    """Return what the register and its requantiser make of the witness in the given width."""
+    exact, wrapped, saturated = (
+        outcome(stage.filter, stage.index, witness, policy)
+        for policy in (Overflow.FORBID, Overflow.WRAP, Overflow.SATURATE)
+    )
+    return {
+        "stage": stage.requantiser.name,
+        "final": exact.held,
+        "code": exact.code,
+        "wrapped": wrapped.held,
+        "wrapped_code": wrapped.code,
+        "saturated": saturated.held,
+        "saturated_code": saturated.code,
+    }
 
 
 def _witness(r: RegisterSizing, end: End, *, partial: bool) -> Witness | None:
@@ -119,8 +165,13 @@ def _left(
         "low": limits.low,
         "high": limits.high,
     }
-    witness = _witness(register, end, partial=False)
-    # a register that wraps or saturates need not hold its sum's end in that frame
-    if witness is None or register.held != register.final:
+    witness = _holding(register, end)
+    if witness is None or not r.exact:
         return finding("code-out-of-range-bound", place, **common)
     return finding("code-out-of-range", place, **common, **_frame(witness))
+
+
+def _holding(r: RegisterSizing, end: End) -> Witness | None:
+    """Return the frame in which the register ends at that end of what it holds."""
+    held = next((w for w in r.held_witnesses if w.end is end), None)
+    return held or _witness(r, end, partial=False)

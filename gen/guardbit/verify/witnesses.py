@@ -7,7 +7,7 @@ from guardbit.model.certificate import Figure, RungResult
 from guardbit.model.finding import Finding, finding
 from guardbit.model.sizing import Witness
 from guardbit.model.vectors import Vector
-from guardbit.vectors.witnesses import MOST_PIXELS, Attained
+from guardbit.vectors.witnesses import MOST_PIXELS, Attained, Shows
 from guardbit.verify.bench import Bench, Trials
 from guardbit.verify.cases import Case, from_vectors
 from guardbit.verify.compare import findings
@@ -47,13 +47,21 @@ def result(bench: Bench, trials: Trials) -> RungResult:
     )
 
 
+_KINDS = {
+    Shows.FINAL: "final sum",
+    Shows.PARTIAL: "partial sum",
+    Shows.HELD: "value held",
+    Shows.CODE: "code",
+}
+
+
 def _covered(bench: Bench) -> tuple[str, ...]:
     run = [a for a in bench.attained if a.stimulus is not None]
     ends: dict[str, list[str]] = {}
     for attained in run:
         w = attained.witness
-        kind = "partial sum" if w.partial else "final sum"
-        ends.setdefault(w.register, []).append(f"{w.end} {kind} {w.value}")
+        text = f"{w.end} {_KINDS[attained.shows]} {w.value}"
+        ends.setdefault(w.register, []).append(text)
     return tuple(f"{register}: {', '.join(found)}" for register, found in ends.items())
 
 
@@ -69,11 +77,11 @@ def _attained(bench: Bench) -> tuple[int, tuple[Finding, ...]]:
             continue
         vector = next(vectors)
         w = attained.witness
-        value = None if w.partial else _reached(bench, attained, vector)
+        value = _reached(bench, attained, vector)
         if value is None:
             continue
         checked += 1
-        held = _held(attained, w)
+        held = w.value if attained.shows is Shows.CODE else _held(attained, w)
         if value != held:
             missed.append(
                 finding("witness-missed", register=w.register, end=w.end, expected=held, got=value)
@@ -89,18 +97,24 @@ def _held(attained: Attained, w: Witness) -> int:
 
 
 def _reached(bench: Bench, attained: Attained, vector: Vector) -> int | None:
-    """Return the last pass's accumulator at the witness's position; None: not told there."""
+    """Return what the last pass shows at the witness's position; None: not told there."""
     f, w = bench.filter, attained.witness
     which = f.passes[attained.pass_index]
-    saturates = which.accumulator.overflow == "saturate"
-    if attained.pass_index != len(f.passes) - 1 or saturates:
+    # a register that saturates need not end at the sum's end
+    saturates = which.accumulator.overflow == "saturate" and attained.shows is Shows.FINAL
+    if attained.pass_index != len(f.passes) - 1 or saturates or w.partial:
         return None
     rows = positions(f.geometry.rows, f.geometry.extent, w.height)
     columns = positions(f.geometry.columns, f.geometry.extent, w.width)
     if w.position[0] not in rows or w.position[1] not in columns:
         return None
     at = rows.index(w.position[0]), columns.index(w.position[1])
-    return int(vector.response.accumulators[-1][at][0])
+    shown = (
+        vector.response.output
+        if attained.shows is Shows.CODE
+        else (vector.response.accumulators[-1])
+    )
+    return int(shown[at][0])
 
 
 def _hidden(bench: Bench) -> tuple[str, ...]:
@@ -115,8 +129,14 @@ def _hidden(bench: Bench) -> tuple[str, ...]:
 
 
 def _inexact(bench: Bench) -> tuple[str, ...]:
-    return tuple(
+    sums = (
         f"{r.name}: its ends are bounds, no frame is known to attain them"
         for r in bench.sizing.registers
         if not r.exact
     )
+    held = (
+        f"{r.name}: what it holds at the end is a bound"
+        for r in bench.sizing.registers
+        if r.exact and not r.held_exact
+    )
+    return (*sums, *held)

@@ -1,0 +1,1 @@
+"""Tests of the searches: fits, goals, sweeps, overflow in practice."""
