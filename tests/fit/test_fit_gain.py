@@ -238,3 +238,43 @@ def test_auto_frac_never_bends_a_tap() -> None:
 def test_gain_equals_nearest_where_nearest_keeps_the_sum() -> None:
     targets = matrix([["1/4", "7/4", "1/4"], ["7/4", 4, "7/4"], ["1/4", "7/4", "1/4"]])
     assert gain(targets, -8, 7) == nearest(targets)
+
+
+def tied_3x3(targets: np.ndarray, unit: int, low: int, high: int) -> np.ndarray | None:
+    """Return the best of all 3x3 matrices with every flip and turn, of the sum asked for."""
+    total = round(Fraction(int(targets.sum()), unit))
+    corner, edge, centre = np.array(list(product(range(low, high + 1), repeat=3))).T
+    every = np.array([[corner, edge, corner], [edge, centre, edge], [corner, edge, corner]])
+    stack = np.moveaxis(every, -1, 0)
+    legal = stack[stack.sum(axis=(1, 2)) == total]
+    if not len(legal):
+        return None
+    off = legal * unit - targets
+    # A stable sort: the triples come in lexicographic order, which is that of the matrices.
+    best: np.ndarray = legal[np.lexsort(((off**2).sum((1, 2)), abs(off).sum((1, 2))))[0]]
+    return best
+
+
+@pytest.mark.parametrize("bits", [3, 4])
+def test_symmetric_3x3_equals_exhaustive_search(bits: int) -> None:
+    random, (low, high), seen = Random(30 + bits), (-(2 ** (bits - 1)), 2 ** (bits - 1) - 1), 0
+    for _ in range(60):
+        unit = random.choice([2, 3, 10, 256])
+        corner, edge, centre = (random.randint(low * unit, high * unit) for _ in range(3))
+        units = np.array([[corner, edge, corner], [edge, centre, edge], [corner, edge, corner]])
+        wanted = tied_3x3(units, unit, low, high)
+        if wanted is not None:
+            seen += 1
+            assert gain(fractions(units, unit), low, high) == tuple(map(tuple, wanted.tolist()))
+    assert seen > 30
+
+
+@pytest.mark.parametrize("bits", [3, 4])
+def test_general_2x2_equals_exhaustive_search(bits: int) -> None:
+    random, low, high = Random(20 + bits), -(2 ** (bits - 1)), 2 ** (bits - 1) - 1
+    for _ in range(60 if bits == 3 else 15):
+        unit = random.choice([2, 3, 10, 256])
+        units = np.array([random.randint(low * unit, high * unit) for _ in range(4)]).reshape(2, 2)
+        wanted = exhaustive_gain(units, unit, low, high)
+        fitted = gain(fractions(units, unit), low, high)
+        assert fitted == (None if wanted is None else tuple(map(tuple, wanted.tolist())))

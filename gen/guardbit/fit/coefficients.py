@@ -53,7 +53,7 @@ def fit(spec: Spec, factor: Factor) -> Outcome:
         return _fit_pinned(spec, factor, factor.pinned)
     if spec.coefficient.fit is FitRule.RESPONSE:
         return finding("response-not-pinned", place(spec, "coefficient.fit"))
-    frac = _frac(spec, factor)
+    frac = chosen_frac(spec, factor)
     return frac if isinstance(frac, Finding) else _fit_at(spec, factor, frac)
 
 
@@ -104,7 +104,7 @@ def _no_gain(spec: Spec, factor: Factor, targets: Matrix, bits: int) -> Finding:
     )
 
 
-def _frac(spec: Spec, factor: Factor) -> int | Finding:
+def chosen_frac(spec: Spec, factor: Factor) -> int | Finding:
     """Return the factor's frac; for "auto" the smallest exact one, else the largest fit."""
     if not isinstance(factor.frac, Auto):
         return factor.frac

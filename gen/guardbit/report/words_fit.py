@@ -67,8 +67,8 @@ WORDS: dict[str, tuple[str, str]] = {
     ),
     "response-not-pinned": (
         'fit = "response" is a search, and its result is not in the spec.',
-        'Pin the integers that the search found as coefficient.pinned, or set fit to "nearest" '
-        'or "gain".',
+        'Run "guardbit size --pin" on the spec: it searches and writes coefficient.pinned; or '
+        'set coefficient.fit to "nearest" or "gain".',
     ),
     "pedestal-no-code": (
         "Pedestal {code} is no code of the {table} format, which has {least}..{greatest}.",

@@ -324,10 +324,6 @@ _KERNELS: dict[str, tuple[str, str]] = {
         'divisor = "sum" divides by the sum of the taps, which is zero.',
         "Write a number.",
     ),
-    "response-unpinned": (
-        'fit = "response" is found by a search, which this version does not make.',
-        'Write its result as coefficient.pinned, or use "nearest" or "gain".',
-    ),
     "pinned-form": ("The pinned taps are not whole numbers in that form.", "Write {expected}."),
     "pinned-kind": (
         "The pinned taps must be {expected} here.",

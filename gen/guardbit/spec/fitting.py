@@ -6,7 +6,7 @@ What depends on fitted taps is checked where they are fitted.
 from fractions import Fraction
 from typing import Any
 
-from guardbit.model.enums import FitRule, Preload, Scale
+from guardbit.model.enums import Preload, Scale
 from guardbit.model.spec import Auto, Pinned, Sum
 from guardbit.spec.forms import PinnedForm
 from guardbit.spec.ideal import Ideal
@@ -42,15 +42,6 @@ def check_fitting(sheet: Sheet, ideal: Ideal | None) -> None:
         _check_exact(sheet, ideal)
     if ideal is not None and sheet.usable(_DIVISOR):
         _check_sums(sheet, ideal)
-    _check_response(sheet)
-
-
-def _check_response(sheet: Sheet) -> None:
-    """Report a fit that is searched, where no search has written its result."""
-    if not sheet.usable("coefficient.fit") or _PINNED in sheet.given:
-        return
-    if sheet.get("coefficient.fit", FitRule) is FitRule.RESPONSE:
-        sheet.report("response-unpinned", "coefficient.fit")
 
 
 def _check_pairs(sheet: Sheet, ideal: Ideal | None) -> None:
