@@ -5,7 +5,7 @@ BIN := $(VENV)/bin
 JOBS ?= 2
 
 .DEFAULT_GOAL := help
-.PHONY: help demo test lint campaign explore coverage accept-examples clean
+.PHONY: help demo test lint campaign errors responses widths explore coverage accept-examples clean
 
 help: ## Show this list.
 	@grep -hE '^[a-z-]+:.*##' $(MAKEFILE_LIST) | sed 's/:.*##/:/' | awk -F': ' '{ printf "  make %-16s %s\n", $$1, $$2 }'
@@ -29,6 +29,15 @@ lint: $(BIN)/ready ## Check style, formatting and types; changes nothing.
 
 campaign: $(BIN)/ready ## Compare C, reference, oracle and SciPy on thousands of random specs.
 	$(BIN)/python tests/campaign $(CAMPAIGN)
+
+errors: $(BIN)/ready ## Look for frames beyond the error bound, by adversarial search on thousands of specs.
+	$(BIN)/python tests/campaign/errors.py $(CAMPAIGN)
+
+responses: $(BIN)/ready ## Compare the response fit with nearest and gain (a quarter of an hour).
+	$(BIN)/python tests/campaign/responses.py $(CAMPAIGN)
+
+widths: $(BIN)/ready ## Count the bits that exact widths save against the textbook rules.
+	$(BIN)/python tests/campaign/widths.py
 
 explore: $(BIN)/ready ## Run the property tests on new examples, many more than make test draws.
 	GUARDBIT_EXPLORE=1 $(BIN)/python -m pytest -n $(JOBS) tests/arith tests/files tests/fit tests/plan tests/reference tests/spec

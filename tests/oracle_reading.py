@@ -330,9 +330,23 @@ def stage_of(
     return Stage(tuple(terms), register, scale, rounding, into["overflow"], target)
 
 
+def without_goal(given: dict[str, Any]) -> dict[str, Any]:
+    """The document without its goal, which decides no output once no word is left to a search."""
+    if "goal" not in given:
+        return given
+    table, between = given.get("coefficient", {}), given.get("intermediate")
+    frac = table.get("frac")
+    numbers = [table.get("bits"), *(frac if type(frac) is list else [frac])]
+    settled = "pinned" in table or table.get("scale") == "exact"
+    need(settled or all(type(number) is int for number in numbers), "open coefficients")
+    words = [1, 1] if between is None else [between.get("bits"), between.get("frac")]
+    need(all(type(word) is int for word in words), "open intermediate")
+    return {name: table for name, table in given.items() if name != "goal"}
+
+
 def tables_of(text: str) -> dict[str, Any]:
     """The tables of the text with every default that is a plain value."""
-    given = tomllib.loads(text, parse_float=Decimal)
+    given = without_goal(tomllib.loads(text, parse_float=Decimal))
     need(set(given) <= set(DEFAULTS), f"unknown table among {sorted(given)}")
     need({"filter", "kernel", "input"} <= set(given), "a required table")
     tables = {

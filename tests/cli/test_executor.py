@@ -11,7 +11,7 @@ from pathlib import Path
 
 import pytest
 
-from guardbit.cli.executor import in_order
+from guardbit.cli.executor import as_done, in_order
 
 SLEEP = "__import__('time').sleep({}) or {!r}"
 # Leaves its own number and that of a process that it started, then works on.
@@ -136,3 +136,11 @@ def test_workers_follow_a_parent_that_is_killed(tmp_path: Path) -> None:
     parent.kill()
     parent.wait()
     assert gone(pids)
+
+
+def test_results_can_be_had_as_they_arrive() -> None:
+    items = [SLEEP.format(0.6, "slow"), "'quick'", "'quicker'"]
+    with closing(as_done(eval, items, 2, lost)) as arriving:
+        found = list(arriving)
+    assert found[-1] == (0, "slow")
+    assert sorted(index for index, _ in found) == [0, 1, 2]

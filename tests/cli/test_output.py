@@ -14,22 +14,23 @@ from guardbit.model.certificate import RungResult
 from guardbit.model.finding import GuardbitError, MachineError, SpecError, finding
 
 
-def sha(text: str) -> str:
-    return hashlib.sha256(text.encode()).hexdigest()
+def sha(data: bytes) -> str:
+    return hashlib.sha256(data).hexdigest()
 
 
-def product(text: str = "int one;\n") -> dict[str, str]:
+def product(text: str = "int one;\n") -> dict[str, bytes]:
     """Return a C file and a certificate that vouches for it, as far as writing looks at it."""
-    document = {"schema": 1, "emitted": [{"name": "a.c", "sha256": sha(text)}]}
-    seal = sha(canonical.dumps(document))
-    return {"a.cert.json": canonical.dumps({**document, "seal": seal}), "a.c": text}
+    document = {"schema": 1, "emitted": [{"name": "a.c", "sha256": sha(text.encode())}]}
+    seal = sha(canonical.dumps(document).encode())
+    record = canonical.dumps({**document, "seal": seal})
+    return {"a.cert.json": record.encode(), "a.c": text.encode()}
 
 
-def contents(folder: Path) -> dict[str, str]:
-    return {path.name: path.read_text() for path in folder.iterdir()}
+def contents(folder: Path) -> dict[str, bytes]:
+    return {path.name: path.read_bytes() for path in folder.iterdir()}
 
 
-def refused(folder: Path, files: Mapping[str, str]) -> list[tuple[str, str]]:
+def refused(folder: Path, files: Mapping[str, bytes]) -> list[tuple[str, str]]:
     before = contents(folder)
     with pytest.raises(SpecError) as caught:
         write_files(folder, files)

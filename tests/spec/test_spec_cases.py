@@ -11,7 +11,7 @@ import pytest
 
 from guardbit.model.canonical import plain
 from guardbit.model.finding import Finding, SpecError
-from guardbit.report.words_spec import WORDS
+from guardbit.report.wording import WORDS
 from guardbit.spec.reader import parse_spec, read_spec
 
 DATA = Path(__file__).parents[1] / "data"

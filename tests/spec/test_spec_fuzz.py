@@ -8,7 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from guardbit.model.finding import Finding, SpecError
-from guardbit.report.words_spec import WORDS
+from guardbit.report.wording import WORDS
 from guardbit.spec.reader import parse_spec, read_spec
 from tools import EXPLORING, examples
 

@@ -26,7 +26,7 @@ CONTRACT = {
     "border": "mode value grid",
     "image": "extent width height step phase spacing channels",
     "code": "*",
-    "goal": "*",
+    "goal": "error snr frames response minimise",
     "budget": "*",
 }
 # Defaults that the contract words, and the formula's parameters.
@@ -57,6 +57,8 @@ DEFAULTS = {
     "image.step": "[1, 1]",
     "image.phase": "[0, 0]",
     "image.channels": "1",
+    "goal.error": "none",
+    "goal.minimise": '["accumulator", "intermediate", "coefficient"]',
 }
 
 

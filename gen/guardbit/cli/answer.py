@@ -5,6 +5,9 @@ from dataclasses import dataclass, field
 
 from guardbit.model.certificate import Certificate, Digest, RungResult
 from guardbit.model.finding import Finding
+from guardbit.model.frequency import ResponseFit
+from guardbit.model.goal import GoalSearch
+from guardbit.model.sheet import Sheet
 from guardbit.model.sizing import Sizing
 
 HOLDS = 0
@@ -22,17 +25,25 @@ _ORDER = (FAULT, WRONG, MISSING, FAILED, HOLDS)
 
 @dataclass(frozen=True)
 class Answer:
-    """`files` are texts to be written, by name. `fault` is a traceback: an error in guardbit."""
+    """`files` are to be written, by name. `fault` is a traceback: an error in guardbit.
+
+    `search` and `fit`: what was searched, where the spec left something open; `pinned`: it was
+    written into the spec. `sheet`: what the sizing sheet shows.
+    """
 
     spec: str
     status: int = HOLDS
     findings: tuple[Finding, ...] = ()
     sizing: Sizing | None = None
     certificate: Certificate | None = None
-    files: Mapping[str, str] = field(default_factory=dict)
+    files: Mapping[str, bytes] = field(default_factory=dict)
     folder: str = ""
     written: tuple[Digest, ...] = ()
     fault: str = ""
+    search: GoalSearch | None = None
+    fit: ResponseFit | None = None
+    pinned: bool = False
+    sheet: Sheet | None = None
 
 
 def overall(statuses: Iterable[int]) -> int:

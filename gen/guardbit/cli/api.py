@@ -8,7 +8,7 @@ Rooms are imported inside the functions, so that importing this module costs not
 """
 
 import os
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -21,8 +21,10 @@ from guardbit.model.spec import Spec
 from guardbit.report.cautions import CAUTIONS
 
 if TYPE_CHECKING:
+    from guardbit.model.goal import GoalSearch
     from guardbit.model.plan import Plan
     from guardbit.model.routine import Emission
+    from guardbit.model.sheet import Sheet
 
 TOOL = f"guardbit {__version__}"
 
@@ -33,6 +35,11 @@ class Product:
 
     certificate: Certificate
     files: Mapping[str, str]
+
+    @property
+    def data(self) -> dict[str, bytes]:
+        """Return the files as they are written."""
+        return {name: text.encode("utf-8") for name, text in self.files.items()}
 
 
 def read(spec: str | Path) -> Spec:
@@ -58,6 +65,61 @@ def unmet(sizing: Sizing, spec: Spec) -> tuple[Finding, ...]:
     from guardbit.sizing.analyse import unmet as broken
 
     return tuple(_lined(found, spec) for found in broken(sizing, Place(spec.path)))
+
+
+def unmet_goals(sizing: Sizing, spec: Spec, *, frames: bool = True) -> tuple[Finding, ...]:
+    """Return a finding for every goal of the spec that is not met.
+
+    A goal for the signal-to-noise ratio is looked at only with `frames`: the goal's images are
+    then read. Raises SpecError, MachineError if one of them cannot be.
+    """
+    if spec.goal is None:
+        return ()
+    from guardbit.study.goals import unmet_goals as missed
+    from guardbit.study.trials import goal_frames
+
+    return missed(spec, sizing, goal_frames(spec) if frames else ())
+
+
+def search(spec: str | Path | Spec) -> "GoalSearch | None":
+    """Return the word lengths that reach the spec's goal; None if it leaves none open.
+
+    Raises SpecError, MachineError if the goal's images cannot be read.
+    """
+    made = _spec(spec)
+    if made.goal is None:
+        return None
+    from guardbit.fit.open import open_words
+    from guardbit.study.goals import search as searched
+
+    return searched(made) if open_words(made) else None
+
+
+def sheet(sizing: Sizing, photographs: Sequence[str | Path] = ()) -> "Sheet":
+    """Return all that goes on a sizing sheet; `photographs` are image files to be filtered.
+
+    They are scaled to the input format first. Raises SpecError, MachineError.
+    """
+    from guardbit.files.images import read_image
+    from guardbit.study.sheet import sheet as gathered
+
+    pictures = {Path(each).name: read_image(Path(each)) for each in photographs}
+    return gathered(sizing, pictures)
+
+
+def sheet_files(made: "Sheet") -> dict[str, bytes]:
+    """Return a sheet as Markdown and JSON, and a frame for every end that it names."""
+    from guardbit.files.writing import digest
+    from guardbit.report.certificate import SCHEMA, sealed_text
+    from guardbit.report.sheet import sheet_markdown
+    from guardbit.study.witnesses import witness_files
+
+    name = made.sizing.filter.name
+    files = {f"{name}.sheet.md": sheet_markdown(made).encode("utf-8")}
+    files |= witness_files(made.sizing)
+    written = [Digest(each, digest(data)) for each, data in files.items()]
+    document = {"schema": SCHEMA, "tool": TOOL, "emitted": written, "sheet": made}
+    return {**files, f"{name}.sheet.json": sealed_text(document).encode("ascii")}
 
 
 def emit(spec: str | Path | Spec) -> Product:
@@ -93,7 +155,7 @@ def write(product: Product, folder: str | Path, force: bool = False) -> tuple[Di
     """
     from guardbit.cli.output import write_files
 
-    return write_files(Path(folder), product.files, force)
+    return write_files(Path(folder), product.data, force)
 
 
 def _spec(spec: str | Path | Spec) -> Spec:
@@ -108,7 +170,7 @@ def _lined(found: Finding, spec: Spec) -> Finding:
 
 def _allowed(spec: Spec) -> Sizing:
     sizing = size(spec)
-    if findings := unmet(sizing, spec):
+    if findings := (*unmet(sizing, spec), *unmet_goals(sizing, spec, frames=False)):
         raise SpecError(*findings)
     return sizing
 

@@ -11,7 +11,7 @@ import threading
 import time
 from collections import deque
 from collections.abc import Callable, Generator, Iterator, Sequence
-from contextlib import contextmanager, suppress
+from contextlib import closing, contextmanager, suppress
 from dataclasses import dataclass
 from multiprocessing import get_context, parent_process
 from multiprocessing.connection import Connection, wait
@@ -40,19 +40,34 @@ def in_order(
     signal's number). `tick(items done)` is called about ten times a second. Closing the
     iterator, or any exception, ends every worker.
     """
-    pool = _Pool(work, deque(enumerate(items)), lost)
     done: dict[int, R] = {}
     following = 0
-    with _ended(pool):
-        for _ in range(min(jobs, len(items))):
-            pool.start()
-        while following < len(items):
-            for index, result in pool.collect(_TICK):
-                done[index] = result
-            tick(following + len(done))
+    with closing(as_done(work, items, jobs, lost, tick)) as arriving:
+        for index, result in arriving:
+            done[index] = result
             while following in done:
                 yield done.pop(following)
                 following += 1
+
+
+def as_done(
+    work: Callable[[T], R],
+    items: Sequence[T],
+    jobs: int,
+    lost: Callable[[T, int], R],
+    tick: Callable[[int], None] = lambda done: None,
+) -> Generator[tuple[int, R], None, None]:
+    """Yield (number of the item, work(item)) as results arrive; else as `in_order`."""
+    pool = _Pool(work, deque(enumerate(items)), lost)
+    count = 0
+    with _ended(pool):
+        for _ in range(min(jobs, len(items))):
+            pool.start()
+        while count < len(items):
+            arrived = pool.collect(_TICK)
+            count += len(arrived)
+            tick(count)
+            yield from arrived
 
 
 @dataclass

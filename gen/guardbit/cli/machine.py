@@ -5,6 +5,8 @@
        "findings": [{"kind", "place": {"file", "line", "key"}, "values": {...}, "sentence"}],
        "sizing": as in the certificate, or null,
        "certificate": for emit and verify, or null,
+       "sheet": for size, or null, "search" and "fit": what size searched, or null,
+       "pinned": whether size wrote that into the spec,
        "folder": where files were written, or "", "written": [{"name", "sha256"}]}]}
 
 Canonical as the certificate is: sorted keys, ASCII, integers beyond 2^53 and fractions as
@@ -50,6 +52,10 @@ def _answer(answer: Answer) -> dict[str, object]:
         "findings": [finding_entry(each) for each in answer.findings],
         "sizing": answer.sizing,
         "certificate": answer.certificate,
+        "sheet": answer.sheet,
+        "search": answer.search,
+        "fit": answer.fit,
+        "pinned": answer.pinned,
         "folder": answer.folder,
         "written": answer.written,
     }

@@ -16,6 +16,8 @@ import click
 
 from guardbit import __version__
 from guardbit.cli.answer import ENDED, FAULT, HOLDS, INTERRUPTED, MISSING, PIPE_CLOSED, WRONG
+from guardbit.cli.ranges import Callback, choices, numbers
+from guardbit.model.enums import FitRule, Rounding
 from guardbit.report.cautions import CAUTIONS
 
 F = TypeVar("F", bound=Callable[..., Any])
@@ -53,6 +55,10 @@ def _json(function: F) -> F:
     )
 
 
+def _axis(option: str, read: Callback, said: str) -> Callable[[F], F]:
+    return click.option(option, callback=read, metavar="VALUES", help=said)
+
+
 _force = click.option("--force", is_flag=True, help="Overwrite files even if they were edited.")
 
 
@@ -69,12 +75,36 @@ def init(name: str, output: str | None, json: bool) -> Work:
 
 @command.command()
 @_many
-def size(specs: tuple[str, ...], jobs: int | None, json: bool) -> Work:
-    """Say how many bits each register needs, and the bound of the error."""
+@click.option("--sheet", is_flag=True, help="Show the sizing sheet: a page for a design review.")
+@click.option("--markdown", is_flag=True, help="Show the sizing sheet as Markdown.")
+@click.option(
+    "--photo",
+    multiple=True,
+    metavar="IMAGE",
+    help="A photograph to filter for the sheet (PNG, PGM).",
+)
+@click.option(
+    "--pin", is_flag=True, help="Write what is searched for (goal, response) into the spec."
+)
+@click.option("--output", "-o", metavar="FOLDER", help="Write the sheet and the witness frames.")
+@_force
+def size(
+    specs: tuple[str, ...],
+    jobs: int | None,
+    json: bool,
+    **asked: Any,  # noqa: ANN401
+) -> Work:
+    """Say how many bits each register needs, and the bound of the error.
+
+    With a goal in the spec: find the word lengths that reach it.
+    """
     from guardbit.cli.many import Call
+    from guardbit.cli.sizing import Size
     from guardbit.cli.specs import run_size
 
-    return partial(run_size, Call(specs, jobs, json))
+    work = Size(asked["sheet"], tuple(asked["photo"]), pin=asked["pin"])
+    shown = (asked["markdown"], asked["output"], asked["force"])
+    return partial(run_size, Call(specs, jobs, json), work, *shown)
 
 
 @command.command()
@@ -111,6 +141,42 @@ def verify(
 
     work = Verify(ladder["cc"], ladder["photo"], ladder["keep"])
     return partial(run_verify, Call(specs, jobs, json), output, force, work)
+
+
+@command.command()
+@click.argument("spec", metavar="SPEC")
+@_axis("--coefficient-bits", numbers(1, 32), "Bits of a coefficient, such as 4..12 or 8,10.")
+@_axis("--frac", numbers(-64, 64, auto=True), "Fraction bits of the coefficients, or auto.")
+@_axis("--intermediate-bits", numbers(2, 32), "Bits between two passes.")
+@_axis("--intermediate-frac", numbers(-64, 64), "Fraction bits between two passes.")
+@_axis("--rounding", choices(*Rounding), "How every requantiser rounds.")
+@_axis("--fit", choices(FitRule.NEAREST, FitRule.GAIN), "How taps become integers.")
+@click.option("--response", is_flag=True, help="Tell the deviation of the frequency response too.")
+@click.option("--all", "every", is_flag=True, help="List every point, however many there are.")
+@click.option("--csv", metavar="FILE", help="Write every point to FILE.")
+@click.option("--plot", metavar="FILE", help="Plot error against bits to FILE (PNG, SVG).")
+@click.option(
+    "--journal",
+    metavar="FILE",
+    help="Where finished points are kept (default: beside the output, until the sweep is done).",
+)
+@click.option(
+    "--jobs", "-j", type=click.IntRange(min=1), metavar="N", help="Processes (default: cores)."
+)
+@click.option("--scheduler", metavar="ADDRESS", help="Work on this Dask cluster instead.")
+@_json
+def sweep(spec: str, response: bool, **given: Any) -> Work:  # noqa: ANN401
+    """Size a spec at every combination of word lengths, and show the best of them.
+
+    Each axis that is left out stays as the spec has it. The same command goes on where it was
+    interrupted.
+    """
+    from guardbit.cli.sweep import Options, run_sweep
+    from guardbit.model.sweep import AXES, Grid
+
+    given["coefficient_frac"] = given.pop("frac")
+    axes = {name: given.pop(name) for name in AXES}
+    return partial(run_sweep, spec, Grid(**axes, response=response), Options(**given))
 
 
 @command.command()

@@ -10,24 +10,29 @@ from guardbit.model.finding import Finding, Place, SpecError, finding
 from guardbit.report.certificate import emitted_digests, load_certificate
 
 CERTIFICATE_SUFFIX = ".cert.json"
+SHEET_SUFFIX = ".sheet.json"
 
 
-def write_files(folder: Path, files: Mapping[str, str], force: bool = False) -> tuple[Digest, ...]:
-    """Write `files` (text by name, the certificate among them) and return their digests.
+def write_files(folder: Path, data: Mapping[str, bytes], force: bool = False) -> tuple[Digest, ...]:
+    """Write files (bytes by name, a sealed record among them) and return their digests.
 
-    All of them or none. Raises SpecError if one that is there was edited since guardbit wrote
+    The record, a certificate or a sizing sheet, holds the digests of the others. All of them
+    are written or none. Raises SpecError if one that is there was edited since guardbit wrote
     it, or was not written by guardbit, unless `force`; MachineError if the folder cannot be
     written.
     """
     from guardbit.files.writing import digest, write_atomic
 
-    data = {name: text.encode("utf-8") for name, text in files.items()}
     if not force and (findings := _edited(folder, data)):
         raise SpecError(*findings)
-    # The certificate vouches for the others, so it takes its place last.
-    order = sorted(data, key=lambda name: name.endswith(CERTIFICATE_SUFFIX))
+    # The record vouches for the others, so it takes its place last.
+    order = sorted(data, key=_is_record)
     write_atomic(folder, {name: data[name] for name in order})
     return tuple(Digest(name, digest(data[name])) for name in order)
+
+
+def _is_record(name: str) -> bool:
+    return name.endswith((CERTIFICATE_SUFFIX, SHEET_SUFFIX))
 
 
 def _edited(folder: Path, data: Mapping[str, bytes]) -> list[Finding]:
@@ -43,10 +48,10 @@ def _edited(folder: Path, data: Mapping[str, bytes]) -> list[Finding]:
 
 
 def _recorded(folder: Path, data: Mapping[str, bytes]) -> dict[str, str]:
-    """Return the digests that a sound certificate in the folder holds, its own included."""
+    """Return the digests that a sound record in the folder holds, its own included."""
     from guardbit.files.writing import digest
 
-    name = next(each for each in data if each.endswith(CERTIFICATE_SUFFIX))
+    name = next(each for each in data if _is_record(each))
     try:
         there = (folder / name).read_bytes()
         document = load_certificate(there.decode("ascii"))

@@ -5,6 +5,7 @@ import sys
 import time
 from collections.abc import Callable
 from contextlib import suppress
+from math import ceil
 from shutil import get_terminal_size
 from typing import TextIO
 
@@ -45,19 +46,21 @@ class Session:
         with suppress(PipeClosedError, OutputError):
             _write(sys.stderr, text)
 
-    def bar(self, noun: str, total: int) -> Callable[[int], None]:
+    def bar(self, noun: str, total: int, begun: int | None = None) -> Callable[[int], None]:
         """Return what draws progress after a second, given how many are done; -1 wipes it.
 
-        It draws nothing where there is no terminal to draw on.
+        With `begun`, how many were done before, it also tells the time that is left at the
+        pace since then. It draws nothing where there is no terminal to draw on.
         """
         if not sys.stderr.isatty() or os.environ.get("TERM", "dumb") == "dumb":
             return lambda done: None
-        return _Bar(self, noun, total).show
+        return _Bar(self, noun, total, begun).show
 
 
 class _Bar:
-    def __init__(self, session: Session, noun: str, total: int) -> None:
+    def __init__(self, session: Session, noun: str, total: int, begun: int | None) -> None:
         self._session, self._noun, self._total = session, noun, total
+        self._begun = begun
         self._start, self._drawn = time.monotonic(), ""
 
     def show(self, done: int) -> None:
@@ -70,9 +73,17 @@ class _Bar:
 
     def _line(self, done: int, seconds: int) -> str:
         full = _BAR * done // self._total
+        left = self._left(done)
         return (
-            f"[{'#' * full}{'.' * (_BAR - full)}] {done} of {self._total} {self._noun}, {seconds} s"
+            f"[{'#' * full}{'.' * (_BAR - full)}] {done} of {self._total} {self._noun}, "
+            f"{seconds} s{left}"
         )
+
+    def _left(self, done: int) -> str:
+        if self._begun is None or done <= self._begun:
+            return ""
+        pace = (time.monotonic() - self._start) / (done - self._begun)
+        return f", about {ceil(pace * (self._total - done))} s left"
 
 
 def _write(stream: TextIO, text: str) -> None:

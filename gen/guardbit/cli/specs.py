@@ -1,16 +1,21 @@
 """The commands that take specs: what each does, shows and advises."""
 
+from dataclasses import replace
 from functools import partial
 
 from guardbit.cli.answer import WRONG, Answer
 from guardbit.cli.many import Call, Command, run
-from guardbit.cli.tasks import Task, Verify, emit, size
+from guardbit.cli.sizing import Size
+from guardbit.cli.tasks import Task, Verify, emit
 from guardbit.report.look import Look
 
 
-def run_size(call: Call) -> int:
+def run_size(call: Call, work: Size, markdown: bool, folder: str | None, force: bool) -> int:
     """Size every spec and return the exit status."""
-    return run(call, Command("size", Task(size), _size_text, _size_advice))
+    work = replace(work, sheet=work.sheet or markdown or call.json, files=folder is not None)
+    show = _size_markdown if markdown else partial(_size_text, work)
+    command = Command("size", Task(work), show, _size_advice, folder, force, long=work.pin)
+    return run(call, command)
 
 
 def run_emit(call: Call, folder: str, force: bool) -> int:
@@ -25,10 +30,29 @@ def run_verify(call: Call, folder: str | None, force: bool, work: Verify) -> int
     return run(call, command)
 
 
-def _size_text(look: Look, answer: Answer) -> str:
-    from guardbit.report.terminal import size_text
+def _size_text(work: Size, look: Look, answer: Answer) -> str:
+    from guardbit.report.goals import fit_text, goal_text
+    from guardbit.report.terminal import folder_text, pinned_text, sheet_text, size_text
 
-    return size_text(look, answer.sizing) if answer.sizing else ""
+    if answer.sizing is None:
+        return ""
+    shown = answer.sheet if work.sheet or work.photographs else None
+    parts = [sheet_text(look, shown) if shown else size_text(look, answer.sizing)]
+    if answer.search is not None:
+        parts.append(goal_text(look, answer.search))
+    if answer.fit is not None:
+        parts.append(fit_text(look, answer.fit))
+    if work.pin and not answer.findings:
+        parts.append(pinned_text(look, answer.spec, answer.pinned))
+    if answer.written:
+        parts.append(folder_text(look, answer.folder, answer.written))
+    return "\n".join(parts)
+
+
+def _size_markdown(look: Look, answer: Answer) -> str:
+    from guardbit.report.sheet import sheet_markdown
+
+    return sheet_markdown(answer.sheet) if answer.sheet else ""
 
 
 def _emit_text(look: Look, answer: Answer) -> str:
@@ -49,9 +73,9 @@ def _verify_text(look: Look, answer: Answer) -> str:
 
 
 def _size_advice(answer: Answer) -> str:
-    if answer.status != WRONG:
-        return ""
-    return f"correct the spec, then: guardbit size {answer.spec}"
+    if answer.status == WRONG:
+        return f"correct the spec, then: guardbit size {answer.spec}"
+    return ""
 
 
 def _emit_advice(answer: Answer) -> str:

@@ -83,8 +83,8 @@ def starter_text(name: str, file: str) -> str:
 
 
 def _table(table: Table, values: Mapping[str, str]) -> dict[str, object]:
-    # The header alone would ask for two passes.
-    off = table.name.startswith("intermediate")
+    # The header alone would ask for two passes, or for a search without a goal.
+    off = table.name.partition(".")[0] in ("intermediate", "goal")
     return {
         "comment": _wrapped(table.explanation),
         "header": f"#[{table.name}]" if off else f"[{table.name}]",

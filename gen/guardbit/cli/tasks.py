@@ -8,7 +8,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 from guardbit.cli import api
-from guardbit.cli.answer import FAULT, MISSING, WRONG, Answer, rung_status
+from guardbit.cli.answer import FAULT, MISSING, Answer, rung_status
 from guardbit.model.finding import Finding, GuardbitError, Place, finding
 
 
@@ -54,14 +54,6 @@ def lost(spec: str, status: int) -> Answer:
     return Answer(spec, MISSING, (finding("worker-lost", Place(spec), cause=cause),))
 
 
-def size(spec: str) -> Answer:
-    """Return the sizing of a spec. Status 2 if a `forbid` is not met."""
-    made = api.read(spec)
-    sizing = api.size(made)
-    findings = api.unmet(sizing, made)
-    return Answer(spec, WRONG if findings else 0, findings, sizing)
-
-
 def emit(spec: str) -> Answer:
     """Return the files that a spec gives, not yet written."""
     return _made(spec, api.emit(spec))
@@ -85,4 +77,4 @@ class Verify:
 
 def _made(spec: str, product: api.Product) -> Answer:
     certificate = product.certificate
-    return Answer(spec, sizing=certificate.sizing, certificate=certificate, files=product.files)
+    return Answer(spec, sizing=certificate.sizing, certificate=certificate, files=product.data)

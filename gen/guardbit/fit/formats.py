@@ -7,7 +7,7 @@ from guardbit.fit.places import place
 from guardbit.model.enums import Container
 from guardbit.model.filter import PixelFormat
 from guardbit.model.finding import Finding, finding
-from guardbit.model.spec import Spec
+from guardbit.model.spec import Auto, Spec
 
 # Smallest first: the default container is the first that holds the format.
 _CONTAINERS = {
@@ -80,6 +80,8 @@ def _wanted(spec: Spec) -> tuple[_Wanted, ...]:
     )
     if mid is None:
         return given, result
+    # what a search has to find is refused before
+    assert not isinstance(mid.bits, Auto) and not isinstance(mid.frac, Auto)
     frac = source.frac if mid.frac is None else mid.frac
     between = _Wanted("intermediate", mid.bits, mid.signed, frac, mid.pedestal, None, None)
     return given, between, result

@@ -4,6 +4,7 @@ from guardbit.fit.coefficients import Fitted, fit
 from guardbit.fit.factors import factors
 from guardbit.fit.formats import border_value, formats
 from guardbit.fit.geometry import geometry
+from guardbit.fit.open import open_findings
 from guardbit.fit.passes import passes, preload_findings
 from guardbit.model.filter import Border, Filter
 from guardbit.model.finding import Finding, SpecError
@@ -15,8 +16,11 @@ def resolve(spec: Spec) -> Filter:
 
     One thing stays open: an accumulator with bits "auto" has None, for sizing to fill in.
     Raises SpecError with all findings: taps that the coefficient register does not hold, keys
-    that contradict each other, codes outside a resolved format.
+    that contradict each other, codes outside a resolved format; or with the word lengths that
+    are left to a search.
     """
+    if found := open_findings(spec):
+        raise SpecError(*found)
     pixels, format_findings = formats(spec)
     value, border_findings = border_value(spec)
     parts, part_findings = factors(spec)

@@ -56,6 +56,14 @@ class First(StrEnum):
     HORIZONTAL = "horizontal"
 
 
+class WordLength(StrEnum):
+    """A word length that a search can make small; of two passes both accumulators count."""
+
+    ACCUMULATOR = "accumulator"
+    INTERMEDIATE = "intermediate"
+    COEFFICIENT = "coefficient"
+
+
 class BorderMode(StrEnum):
     CONSTANT = "constant"
     REPLICATE = "replicate"

@@ -24,6 +24,7 @@ from guardbit.model.enums import (
     Preload,
     Rounding,
     Scale,
+    WordLength,
 )
 
 Matrix: TypeAlias = tuple[tuple[Fraction, ...], ...]
@@ -107,10 +108,12 @@ class AccumulatorTable:
 
 @dataclass(frozen=True)
 class IntermediateTable:
+    """`bits` and `frac` are "auto" only beside a goal: a search then finds them."""
+
     first: First
-    bits: int
+    bits: int | Auto
     signed: bool
-    frac: int | None
+    frac: int | Auto | None
     pedestal: int
     rounding: Rounding
     overflow: Overflow
@@ -150,6 +153,22 @@ class ImageTable:
 
 
 @dataclass(frozen=True)
+class GoalTable:
+    """What a search has to reach: at least one of the first three is set.
+
+    `error`: the largest |error| in LSB; `snr`: the least signal-to-noise ratio in dB on all
+    `frames` together (paths from the spec's folder); `response`: the largest deviation of the
+    frequency response. `minimise` has every word length once, the first one first.
+    """
+
+    error: Fraction | None
+    snr: Fraction | None
+    response: Fraction | None
+    frames: tuple[str, ...]
+    minimise: tuple[WordLength, ...]
+
+
+@dataclass(frozen=True)
 class Spec:
     """One spec file. `lines` maps a dotted key ("kernel.taps") to its line, from 1."""
 
@@ -165,3 +184,4 @@ class Spec:
     output: OutputTable
     border: BorderTable
     image: ImageTable
+    goal: GoalTable | None = None

@@ -27,6 +27,11 @@ def certificate_text(certificate: Certificate) -> str:
     rungs = tuple(_without_folders(rung) for rung in certificate.rungs)
     document = plain(replace(certificate, rungs=rungs))
     assert isinstance(document, dict)
+    return sealed_text(document)
+
+
+def sealed_text(document: Mapping[str, object]) -> str:
+    """Return the canonical JSON of a document with its seal."""
     return dumps({**document, "seal": _seal(document)})
 
 

@@ -12,13 +12,17 @@ from guardbit.model.finding import Finding
 from guardbit.report.heads import head, safe, words
 from guardbit.report.look import STYLES, Look, drawn
 from guardbit.report.rungs import verify_text
+from guardbit.report.sheet import sheet_text
 from guardbit.report.widths import size_text
 from guardbit.report.wording import sentence, where
 
 __all__ = [
     "emit_text",
     "finding_line",
+    "folder_text",
     "next_line",
+    "pinned_text",
+    "sheet_text",
     "size_text",
     "topic_text",
     "verify_text",
@@ -30,13 +34,28 @@ _LABELS = 22
 
 def emit_text(look: Look, filter_: Filter, folder: str, files: Sequence[Digest]) -> str:
     """Return the text of `emit` for one filter: what was written, and its digests."""
+    return drawn(look, *head(look, filter_), Text(), *_written(look, folder, files))
+
+
+def folder_text(look: Look, folder: str, files: Sequence[Digest]) -> str:
+    """Return what was written into a folder, and its digests."""
+    return drawn(look, *_written(look, folder, files))
+
+
+def _written(look: Look, folder: str, files: Sequence[Digest]) -> tuple[Text, Table]:
     table = Table.grid(padding=(0, 2))
     table.add_column(min_width=_LABELS, overflow="fold")
     table.add_column(style="dim" if look.colour else "")
     for file in files:
         table.add_row(words(look, f"    {file.name}"), f"sha256 {file.sha256[:16]}")
-    title = Text("  written to ").append(words(look, folder))
-    return drawn(look, *head(look, filter_), Text(), title, table)
+    return Text("  written to ").append(words(look, folder)), table
+
+
+def pinned_text(look: Look, spec: str, pinned: bool) -> str:
+    """Return the line that says what `--pin` did to a spec."""
+    if pinned:
+        return drawn(look, words(look, f"  pinned: what was found is written in {spec}"))
+    return drawn(look, words(look, f"  pinned: nothing; {spec} leaves nothing to search"))
 
 
 def finding_line(look: Look, finding: Finding) -> str:

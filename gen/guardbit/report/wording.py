@@ -5,13 +5,23 @@ the finding's values.
 """
 
 from guardbit.model.finding import Finding, Place
-from guardbit.report import words_cli, words_fit, words_sizing, words_spec, words_verify
+from guardbit.report import (
+    words_cli,
+    words_fit,
+    words_goal,
+    words_sizing,
+    words_spec,
+    words_sweep,
+    words_verify,
+)
 
 WORDS: dict[str, tuple[str, str]] = {
     **words_cli.WORDS,
     **words_fit.WORDS,
+    **words_goal.WORDS,
     **words_sizing.WORDS,
     **words_spec.WORDS,
+    **words_sweep.WORDS,
     **words_verify.WORDS,
 }
 

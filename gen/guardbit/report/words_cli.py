@@ -14,6 +14,10 @@ WORDS: dict[str, tuple[str, str]] = {
         "{path} is there already and no certificate beside it says that guardbit wrote it.",
         "Choose another folder, or pass --force to overwrite it.",
     ),
+    "spec-changed": (
+        "It was changed while guardbit worked on it, so that nothing was written into it.",
+        "Run the command again.",
+    ),
     "certificate-syntax": (
         "Not a certificate: {reason}.",
         "Write it again with guardbit emit --force.",

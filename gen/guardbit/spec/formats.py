@@ -9,6 +9,7 @@ from guardbit.model.enums import (
     Preload,
     Rounding,
 )
+from guardbit.model.spec import Auto
 from guardbit.spec.ideal import Ideal
 from guardbit.spec.sheet import Sheet
 
@@ -43,7 +44,7 @@ def codes(sheet: Sheet, table: str) -> tuple[int, int] | None:
     What [output] leaves out is the input's.
     """
     bits_key, signed_key = (_settled(sheet, table, part) for part in ("bits", "signed"))
-    if not sheet.usable(bits_key, signed_key):
+    if not sheet.usable(bits_key, signed_key) or sheet.values[bits_key] is Auto.AUTO:
         return None
     bits, signed = sheet.get(bits_key, int), sheet.get(signed_key, bool)
     return (-(1 << bits - 1), (1 << bits - 1) - 1) if signed else (0, (1 << bits) - 1)

@@ -143,6 +143,38 @@ class Positive:
 
 
 @dataclass(frozen=True)
+class Rational:
+    """One exact number, above zero if it is to be `positive`."""
+
+    positive: bool
+
+    @property
+    def wanted(self) -> str:
+        """What would be right."""
+        return f'a number{" above zero" if self.positive else ""} (1.5 or "3/2")'
+
+
+@dataclass(frozen=True)
+class Paths:
+    """Files beside the spec or below its folder, by name."""
+
+    wanted: str = 'a list of image files, each a path such as "shots/line3.pgm"'
+
+
+@dataclass(frozen=True)
+class Order:
+    """Words of a closed list, each at most once; those left out follow. Read as all of them."""
+
+    words: type[StrEnum]
+
+    @property
+    def wanted(self) -> str:
+        """What would be right."""
+        words = tuple(f'"{word.value}"' for word in self.words)
+        return f"a list of {listed(words, 'and')}"
+
+
+@dataclass(frozen=True)
 class DivisorForm:
     """A positive number or "sum", or [column's, row's]. Read as a tuple of 1 or 2."""
 
@@ -190,6 +222,9 @@ Form: TypeAlias = (
     | WholeOrTwo
     | Size
     | Positive
+    | Rational
+    | Paths
+    | Order
     | DivisorForm
     | Rows
     | Numbers

@@ -46,6 +46,7 @@ from guardbit.spec.forms import (
     WholeOrTwo,
 )
 from guardbit.spec.formulas import RECIPES, Direction, Formula
+from guardbit.spec.keys_goal import GOAL
 
 # Wide enough for any format; the format's own codes are checked once it is known.
 _CODE = Whole(-(2**31), 2**32 - 1)
@@ -65,7 +66,7 @@ TABLES: tuple[Table, ...] = (
     Table("border", "How the image continues outside itself."),
     Table("image", "Image sizes, and which output positions exist."),
     Table("code", "Choices about the emitted C.", reserved=True),
-    Table("goal", "What a search is to reach.", reserved=True),
+    Table("goal", "What guardbit size searches word lengths for, where they are left open."),
     Table("budget", "Limits on cost.", reserved=True),
 )
 
@@ -208,7 +209,8 @@ _COEFFICIENT = (
     Key(
         "coefficient.bits",
         Whole(1, 32, auto=True),
-        'Word length of an integer coefficient; "auto" needs taps that are exact at frac.',
+        'Word length of an integer coefficient; "auto" needs taps that are exact at frac, or '
+        "leaves it to the search for a [goal].",
         Auto.AUTO,
     ),
     Key("coefficient.signed", Flag(), "Whether coefficients are two's complement.", True),
@@ -216,14 +218,15 @@ _COEFFICIENT = (
         "coefficient.frac",
         WholeOrTwo(-64, 64),
         'Fraction bits of the coefficients; "auto" takes the least at which all taps are exact, '
-        "else the most that fits bits. A pair fits column and row each alone.",
+        "else the most that fits bits; beside a [goal] it is searched. A pair fits column and row "
+        "each alone.",
         (Auto.AUTO,),
     ),
     Key(
         "coefficient.fit",
         Choice(FitRule),
-        "nearest rounds each tap; gain keeps the sum exact; response is searched, and then "
-        "needs pinned.",
+        "nearest rounds each tap; gain keeps the sum exact; response comes nearest in frequency: "
+        "size --pin searches it and writes pinned.",
         FitRule.NEAREST,
     ),
     Key(
@@ -246,12 +249,18 @@ _INTERMEDIATE = (
         "The pass that runs first: vertical is the column, horizontal the row.",
         First.VERTICAL,
     ),
-    Key("intermediate.bits", Whole(2, 32), "Word length between the passes.", required=True),
+    Key(
+        "intermediate.bits",
+        Whole(2, 32, auto=True),
+        'Word length between the passes; "auto" leaves it to the search for a [goal].',
+        required=True,
+    ),
     Key("intermediate.signed", Flag(), "Whether its codes are two's complement.", True),
     Key(
         "intermediate.frac",
-        _FRAC,
-        "Fraction bits between the passes.",
+        Whole(-64, 64, auto=True),
+        'Fraction bits between the passes; "auto", or leaving it out beside a [goal], leaves it '
+        "to the search.",
         shown="the input's",
     ),
     Key("intermediate.pedestal", _CODE, "The code that stands for zero in between.", 0),
@@ -351,6 +360,7 @@ KEYS: Mapping[str, Key] = {
         *_OUTPUT,
         *_BORDER,
         *_IMAGE,
+        *GOAL,
         *_RESERVED,
     )
 }

@@ -34,6 +34,7 @@ from guardbit.model.spec import (
 )
 from guardbit.spec.fitting import check_fitting, in_pairs, read_pinned
 from guardbit.spec.formats import check_formats, check_image
+from guardbit.spec.goal import check_goal, read_goal
 from guardbit.spec.kernel import Source, read_kernel
 from guardbit.spec.sheet import Sheet, read_sheet
 from guardbit.spec.toml import load
@@ -68,6 +69,7 @@ def _parse(data: bytes, path: str, folder: Path) -> Spec:
     check_image(sheet, ideal)
     check_fitting(sheet, ideal)
     pinned = read_pinned(sheet, ideal)
+    check_goal(sheet, folder)
     if sheet.findings or source is None:
         raise SpecError(*sorted(sheet.findings, key=_by_place))
     digest = hashlib.sha256(data + source.content).hexdigest()
@@ -100,6 +102,7 @@ def _spec(sheet: Sheet, source: Source, pinned: Pinned | None, path: str, digest
             sheet.get("border.grid", Grid),
         ),
         image=_image(sheet),
+        goal=read_goal(sheet) if "goal" in sheet.given else None,
     )
 
 
@@ -150,9 +153,9 @@ def _accumulator(sheet: Sheet, table: str) -> AccumulatorTable:
 def _intermediate(sheet: Sheet) -> IntermediateTable:
     return IntermediateTable(
         first=sheet.get("intermediate.first", First),
-        bits=sheet.get("intermediate.bits", int),
+        bits=sheet.width("intermediate.bits"),
         signed=sheet.get("intermediate.signed", bool),
-        frac=sheet.maybe("intermediate.frac", int),
+        frac=sheet.maybe_width("intermediate.frac"),
         pedestal=sheet.get("intermediate.pedestal", int),
         rounding=sheet.get("intermediate.rounding", Rounding),
         overflow=sheet.get("intermediate.overflow", Overflow),

@@ -49,6 +49,10 @@ class Sheet:
         value = self.values[key]
         return Auto.AUTO if value is Auto.AUTO else self.get(key, int)
 
+    def maybe_width(self, key: str) -> int | Auto | None:
+        """Return the value of a key that may be "auto"; None where it is left to a later stage."""
+        return None if self.values[key] is None else self.width(key)
+
     def usable(self, *keys: str) -> bool:
         """Return whether every one of these keys has a value without fault."""
         return not self.faulty.intersection(keys)
@@ -56,6 +60,10 @@ class Sheet:
     def report(self, kind: str, key: str, /, **values: Value) -> None:
         """Note a finding at a key."""
         self.findings.append(finding(kind, self.place(key), **values))
+
+    def report_at(self, kind: str, place: Place, /, **values: Value) -> None:
+        """Note a finding at a place within a key."""
+        self.findings.append(finding(kind, place, **values))
 
     def reject(self, kind: str, key: str, /, **values: Value) -> None:
         """Note a finding at a key, and use its value for nothing more."""

@@ -25,8 +25,11 @@ from guardbit.spec.forms import (
     Identifier,
     Line,
     Numbers,
+    Order,
+    Paths,
     PinnedForm,
     Positive,
+    Rational,
     RelativePath,
     Rows,
     Size,
@@ -118,6 +121,10 @@ def convert(form: Form, raw: object) -> object:
             return _fracs(form, raw)
         case Size():
             return _size(form, raw)
+        case Paths():
+            return _paths(form, raw)
+        case Order():
+            return _order(form, raw)
     return _exact_form(form, raw)
 
 
@@ -128,6 +135,8 @@ def _exact_form(form: Form, raw: object) -> object:
             pair = _one_or_two(raw, form.wanted)
             sigma = tuple(_positive(item, form.wanted) for item in pair)
             return sigma if len(sigma) == 2 else sigma * 2
+        case Rational():
+            return (_positive if form.positive else number)(raw, form.wanted)
         case DivisorForm():
             pair = _one_or_two(raw, form.wanted)
             return tuple(_divisor(item, form.wanted) for item in pair)
@@ -229,6 +238,25 @@ def _size(form: Size, raw: object) -> tuple[int, int]:
         return _two(raw, form.low, form.high, form.wanted)
     size = _whole(raw, form.low, form.high, form.wanted)
     return size, size
+
+
+def _paths(form: Paths, raw: object) -> tuple[str, ...]:
+    if not isinstance(raw, list) or not raw:
+        raise _wrong(raw, form.wanted)
+    paths = [path for path in raw if isinstance(path, str) and not isinstance(path, Real)]
+    if len(paths) < len(raw):
+        raise _wrong(raw, form.wanted)
+    return tuple(paths)
+
+
+def _order(form: Order, raw: object) -> tuple[StrEnum, ...]:
+    if not isinstance(raw, list):
+        raise _wrong(raw, form.wanted)
+    given = [_choice(Choice(form.words), item) for item in raw]
+    twice = next((word for at, word in enumerate(given) if word in given[:at]), None)
+    if twice is not None:
+        raise _faulty("word-twice", got=f'"{twice}"', expected=form.wanted)
+    return (*given, *(word for word in form.words if word not in given))
 
 
 def number(raw: object, wanted: str) -> Fraction:

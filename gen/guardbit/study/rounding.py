@@ -1,7 +1,6 @@
 """The mean and variance of the rounding that frames show, beside those of uniform residues."""
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
@@ -11,22 +10,10 @@ from numpy.typing import NDArray
 from guardbit.arith.rounding import ratio, round_ratio
 from guardbit.model.enums import Rounding
 from guardbit.model.filter import Filter, Pass
+from guardbit.model.practice import MeasuredRounding
 from guardbit.model.vectors import Codes
 from guardbit.reference.run import respond
 from guardbit.sizing.passes import INTERMEDIATE, OUTPUT, is_preloaded, start_value
-
-
-@dataclass(frozen=True)
-class MeasuredRounding:
-    """Mean and variance of what one requantiser's rounding added, in LSB of its own codes.
-
-    Over the `values` it rounded, whatever its overflow then made of them.
-    """
-
-    name: str
-    values: int
-    mean: Fraction
-    variance: Fraction
 
 
 def measured_rounding(f: Filter, frames: Iterable[Codes]) -> tuple[MeasuredRounding, ...]:

@@ -10,6 +10,7 @@ from fractions import Fraction
 from math import lcm
 
 import numpy as np
+from numpy.typing import NDArray
 
 from guardbit.model.certificate import Figure, RungResult
 from guardbit.model.decimals import lower, signed, upper
@@ -101,23 +102,40 @@ def _legal(filter_: Filter, frame: Codes) -> bool:
 
 
 def _spans(filter_: Filter, vectors: Sequence[Vector]) -> list[Span]:
-    scale, ideal = _scaled(filter_)
+    scale, ideal = ideal_filter(filter_)
     return [_span(filter_, scale, ideal, v) for v in vectors if v.response.output.size]
 
 
 def _span(filter_: Filter, scale: int, ideal: Filter, vector: Vector) -> Span:
+    found = deviation(filter_, scale, ideal, vector.frame, vector.response.output)
+    low, high = Fraction(found.error.min(), found.unit), Fraction(found.error.max(), found.unit)
+    return Span(vector.name, low, high, found.error.size)
+
+
+@dataclass(frozen=True, eq=False)
+class Deviation:
+    """A frame's errors and clamped ideal codes: whole numbers of 1/`unit` LSB."""
+
+    error: NDArray[np.object_]
+    ideal: NDArray[np.object_]
+    unit: int
+
+
+def deviation(filter_: Filter, scale: int, ideal: Filter, frame: Codes, output: Codes) -> Deviation:
+    """Return how far the codes of `output` are from the ideal ones of a frame, exactly.
+
+    `scale` and `ideal` are those of `ideal_filter`.
+    """
     to = filter_.output
     shift = to.frac - filter_.input.frac
     up, down = 2 ** max(shift, 0), 2 ** max(-shift, 0) * scale
-    sums = respond(ideal, vector.frame).accumulators[-1].astype(object)
+    sums = respond(ideal, frame).accumulators[-1].astype(object)
     # Everything times `down`, so that all numbers are whole.
     code = np.clip(sums * up + to.pedestal * down, to.low * down, to.high * down)
-    error = vector.response.output.astype(object) * down - code
-    low, high = Fraction(error.min(), down), Fraction(error.max(), down)
-    return Span(vector.name, low, high, error.size)
+    return Deviation(output.astype(object) * down - code, code, down)
 
 
-def _scaled(filter_: Filter) -> tuple[int, Filter]:
+def ideal_filter(filter_: Filter) -> tuple[int, Filter]:
     """Return (denominator, filter): its sums are the ideal filter's times the denominator."""
     terms = _ideal_terms(filter_)
     scale = lcm(*(ideal.denominator for ideal in terms.values()))
