@@ -31,8 +31,8 @@ from guardbit.model.finding import SpecError
 from guardbit.model.sizing import Sizing
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.spec.reader import parse_spec
-from guardbit.study.adversary import adversary
-from guardbit.study.attempt import Attempt, attempt
+from guardbit.study.adversary.attempt import Attempt, attempt
+from guardbit.study.adversary.search import adversary
 
 QUANTILES = (0.0, 0.001, 0.01, 0.05, 0.1, 0.25, 0.5)
 WANTED = 0.95

@@ -21,8 +21,8 @@ from guardbit.model.finding import SpecError
 from guardbit.model.spec import Spec
 from guardbit.sizing.frequency import frequency
 from guardbit.spec.reader import parse_spec
-from guardbit.study.pins import pin_fit
-from guardbit.study.response import fit_response
+from guardbit.study.response.fit import fit_response
+from guardbit.study.response.pins import pin_fit
 
 EXAMPLES = Path(__file__).parents[2] / "examples"
 

@@ -7,14 +7,14 @@ import numpy as np
 import pytest
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_envelope import (
+from guardbit.sizing.error.envelope import (
     Envelope,
     clipped_corners,
     from_corners,
     lower_hull,
 )
-from guardbit.sizing.error_inputs import Inputs, Weight
-from guardbit.sizing.error_pixels import pixel_envelope, sum_range
+from guardbit.sizing.error.inputs import Inputs, Weight
+from guardbit.sizing.error.pixels import pixel_envelope, sum_range
 
 
 def random_inputs(rng: random.Random, most: int) -> Inputs:

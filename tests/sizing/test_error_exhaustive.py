@@ -13,7 +13,7 @@ from guardbit.model.enums import BorderMode, Extent, Grid, Rounding
 from guardbit.model.filter import Border, Filter
 from guardbit.model.sizing import ErrorBound
 from guardbit.sizing.analyse import analyse
-from guardbit.sizing.error_choices import Work
+from guardbit.sizing.error.choices import Work
 
 from .small import (
     Ints,
@@ -154,8 +154,8 @@ def test_bounds_over_real_pixels_hold_as_well(
     draw: Callable[[random.Random], Filter], splits: int, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Where the choices of integer pixels are too many to go through."""
-    monkeypatch.setattr("guardbit.sizing.error.WORK", Work(list=0, table=0))
-    monkeypatch.setattr("guardbit.sizing.error_peaks.MOST_SPLITS", splits)
+    monkeypatch.setattr("guardbit.sizing.error.bound.WORK", Work(list=0, table=0))
+    monkeypatch.setattr("guardbit.sizing.error.peaks.MOST_SPLITS", splits)
     found = compared(draw, "real", 25)
     assert found.ends > 15
     assert found.attained > 0.2 * found.ends
@@ -164,7 +164,7 @@ def test_bounds_over_real_pixels_hold_as_well(
 @pytest.mark.parametrize("walk", [0, 400])
 def test_classes_that_are_walked_or_not(walk: int, monkeypatch: pytest.MonkeyPatch) -> None:
     """A constant outside the legal range, with the classes one by one, or one case for all."""
-    monkeypatch.setattr("guardbit.sizing.error_inputs.WALK_CASES", walk)
+    monkeypatch.setattr("guardbit.sizing.error.inputs.WALK_CASES", walk)
     rng, exact = random.Random("walk"), 0
     for _ in range(25):
         taps = [[rng.randint(-3, 4) for _ in range(3)]]

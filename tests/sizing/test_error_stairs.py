@@ -11,10 +11,10 @@ from guardbit.arith.rounding import requantise
 from guardbit.arith.words import clamp, wrap
 from guardbit.model.enums import Overflow, Rounding
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_codes import codes_at
-from guardbit.sizing.error_pixels import pixel_envelope, sum_range
-from guardbit.sizing.error_scan import Scan
-from guardbit.sizing.error_stairs import Stairs
+from guardbit.sizing.error.codes import codes_at
+from guardbit.sizing.error.pixels import pixel_envelope, sum_range
+from guardbit.sizing.error.scan import Scan
+from guardbit.sizing.error.stairs import Stairs
 
 from .small import pixels, to_output
 from .test_error_envelope import random_inputs
@@ -108,7 +108,7 @@ def test_a_scan_finds_the_greatest_of_all(
     seed: int, most_steps: int, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Also where only residues, or none at all, are gone through: then it is a bound."""
-    monkeypatch.setattr("guardbit.sizing.error_stairs.MOST_STEPS", most_steps)
+    monkeypatch.setattr("guardbit.sizing.error.stairs.MOST_STEPS", most_steps)
     rng = random.Random(f"scan{seed}")
     for _ in range(25):
         inputs, sign = random_inputs(rng, 5), rng.choice([1, -1])
@@ -134,7 +134,7 @@ def test_a_scan_finds_the_greatest_of_all(
 
 
 def test_a_scan_that_is_cut_short_is_still_a_bound(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("guardbit.sizing.error_scan.MOST_PIECES", 1)
+    monkeypatch.setattr("guardbit.sizing.error.scan.MOST_PIECES", 1)
     rng = random.Random("short")
     for _ in range(20):
         inputs, values = random_inputs(rng, 6), Interval(0, 5)

@@ -8,7 +8,7 @@ import pytest
 from guardbit.model.enums import Overflow, Preload, Rounding
 from guardbit.model.filter import Accumulator
 from guardbit.sizing.analyse import analyse
-from guardbit.sizing.error_statistics import moments
+from guardbit.sizing.error.statistics import moments
 
 from .small import axis, column_then_row, kernel, pixels, plain, rounded, single, to_output
 

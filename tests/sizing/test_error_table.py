@@ -8,10 +8,10 @@ import numpy as np
 import pytest
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_choices import Work, pixel_choices
-from guardbit.sizing.error_inputs import Inputs
-from guardbit.sizing.error_pixels import sum_range
-from guardbit.sizing.error_table import Choices, Input, Item, Menu, listed, tabled
+from guardbit.sizing.error.choices import Work, pixel_choices
+from guardbit.sizing.error.inputs import Inputs
+from guardbit.sizing.error.pixels import sum_range
+from guardbit.sizing.error.table import Choices, Input, Item, Menu, listed, tabled
 
 from .test_error_envelope import random_inputs
 

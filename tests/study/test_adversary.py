@@ -12,9 +12,9 @@ from guardbit.fit.resolve import resolve
 from guardbit.model.sizing import End, Sizing
 from guardbit.sizing.analyse import analyse
 from guardbit.spec.reader import parse_spec, read_spec
-from guardbit.study.adversary import adversary
-from guardbit.study.attempt import attempt, ideal_code
-from guardbit.study.nudges import Option, Stage, Window, repeated
+from guardbit.study.adversary.attempt import attempt, ideal_code
+from guardbit.study.adversary.nudges import Option, Stage, Window, repeated
+from guardbit.study.adversary.search import adversary
 
 EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
 HEAD = '[filter]\nname = "one"\n'

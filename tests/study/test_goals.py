@@ -23,13 +23,13 @@ from guardbit.report.look import Look
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.sizing.frequency import frequency
 from guardbit.spec.reader import parse_spec
-from guardbit.study import goals
-from guardbit.study.candidates import candidates
-from guardbit.study.choices import coefficient_choices, with_words
-from guardbit.study.goal_pins import pin_goal
-from guardbit.study.goals import search, unmet_goals
-from guardbit.study.screen import screen_of
-from guardbit.study.trials import greatest_error, power_ratio
+from guardbit.study.goals import search as goals
+from guardbit.study.goals.candidates import candidates
+from guardbit.study.goals.choices import coefficient_choices, with_words
+from guardbit.study.goals.pins import pin_goal
+from guardbit.study.goals.screen import screen_of
+from guardbit.study.goals.search import search, unmet_goals
+from guardbit.study.goals.trials import greatest_error, power_ratio
 
 ACCUMULATOR, INTERMEDIATE, COEFFICIENT = WordLength
 ORDERS = [(ACCUMULATOR, INTERMEDIATE, COEFFICIENT), (COEFFICIENT, INTERMEDIATE, ACCUMULATOR)]

@@ -14,8 +14,8 @@ from guardbit.model.spec import Spec
 from guardbit.report.wording import sentence
 from guardbit.sizing.frequency import frequency
 from guardbit.spec.reader import parse_spec
-from guardbit.study.pins import pin_fit, pin_response
-from guardbit.study.response import fit_response
+from guardbit.study.response.fit import fit_response
+from guardbit.study.response.pins import pin_fit, pin_response
 
 HEAD = '[filter]\nname = "blur"\n[input]\nbits = 8\n'
 MATRIX = HEAD + (

@@ -19,12 +19,12 @@ from guardbit.model.finding import SpecError
 from guardbit.model.frequency import FactorFit, ResponseFit
 from guardbit.model.spec import Auto, Spec
 from guardbit.sizing.peak import peak
-from guardbit.study.polish import polished, wandered
-from guardbit.study.quiet import quiet_output
-from guardbit.study.response import fit_response
-from guardbit.study.tangents import directions, first_conditions, ladders, solve
-from guardbit.study.tied import deviation, gathered, spread, tied
-from guardbit.study.waves import basis, grid, peaks
+from guardbit.study.response.fit import fit_response
+from guardbit.study.response.polish import polished, wandered
+from guardbit.study.response.quiet import quiet_output
+from guardbit.study.response.tangents import directions, first_conditions, ladders, solve
+from guardbit.study.response.tied import deviation, gathered, spread, tied
+from guardbit.study.response.waves import basis, grid, peaks
 
 Rows = list[list[int | str]]
 

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from fit.specs import spec
 from guardbit.fit.nearest import nearest
 from guardbit.model.frequency import FactorFit
-from guardbit.study.response import TOLERANCE, fit_response
+from guardbit.study.response.fit import TOLERANCE, fit_response
 
 Floats = NDArray[np.float64]
 Rows = list[list[Fraction]]

@@ -75,8 +75,8 @@ def unmet_goals(sizing: Sizing, spec: Spec, *, frames: bool = True) -> tuple[Fin
     """
     if spec.goal is None:
         return ()
-    from guardbit.study.goals import unmet_goals as missed
-    from guardbit.study.trials import goal_frames
+    from guardbit.study.goals.search import unmet_goals as missed
+    from guardbit.study.goals.trials import goal_frames
 
     return missed(spec, sizing, goal_frames(spec) if frames else ())
 
@@ -90,7 +90,7 @@ def search(spec: str | Path | Spec) -> "GoalSearch | None":
     if made.goal is None:
         return None
     from guardbit.fit.open import open_words
-    from guardbit.study.goals import search as searched
+    from guardbit.study.goals.search import search as searched
 
     return searched(made) if open_words(made) else None
 

@@ -73,12 +73,12 @@ class _Settled:
         if spec.goal is not None:
             search = api.search(spec)
         if search is not None:
-            from guardbit.study.goal_pins import pin_goal
+            from guardbit.study.goals.pins import pin_goal
 
             text = pin_goal(spec, text, search)
         elif pin and _is_response_open(spec):
-            from guardbit.study.pins import pin_fit
-            from guardbit.study.response import fit_response
+            from guardbit.study.response.fit import fit_response
+            from guardbit.study.response.pins import pin_fit
 
             fit = fit_response(spec)
             text = pin_fit(spec, text, fit)

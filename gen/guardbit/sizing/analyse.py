@@ -5,7 +5,7 @@ from dataclasses import dataclass, replace
 
 from guardbit.model.filter import Filter, Pass
 from guardbit.model.sizing import RegisterSizing, RequantiserSizing, Sizing
-from guardbit.sizing.error import error_bound
+from guardbit.sizing.error.bound import error_bound
 from guardbit.sizing.passes import (
     ACCUMULATOR,
     FIRST_ACCUMULATOR,

@@ -14,7 +14,7 @@ from guardbit.model.spec import Auto, Spec
 from guardbit.model.sweep import AXES, ERROR_PLACES, Cost, Grid, Point, Row, Sweep
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.sizing.frequency import frequency
-from guardbit.study.trials import coefficient_bits, greatest_error
+from guardbit.study.goals.trials import coefficient_bits, greatest_error
 
 MOST_POINTS = 1_000_000
 

@@ -4,7 +4,7 @@ from guardbit.model.enums import FitRule
 from guardbit.model.frequency import FactorFit, ResponseFit
 from guardbit.model.spec import Spec
 from guardbit.spec.pinning import PinValue, pinned_text
-from guardbit.study.response import fit_response
+from guardbit.study.response.fit import fit_response
 
 
 def pin_response(spec: Spec, text: str, seconds: float = 60.0) -> str:

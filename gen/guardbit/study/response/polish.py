@@ -11,8 +11,8 @@ from typing import TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
-from guardbit.study.tied import Tied
-from guardbit.study.waves import Complexes, Floats, basis, grid
+from guardbit.study.response.tied import Tied
+from guardbit.study.response.waves import Complexes, Floats, basis, grid
 
 _Whole: TypeAlias = NDArray[np.int64]
 

@@ -9,12 +9,12 @@ from math import ceil, floor, gcd, prod
 
 from guardbit.model.filter import Filter
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_columns import Results, results
-from guardbit.sizing.error_envelope import Envelope, Part, RealCorner, scale_of
-from guardbit.sizing.error_inputs import Case
-from guardbit.sizing.error_pixels import items_of, pixel_envelope, sum_range
-from guardbit.sizing.error_scan import Scan
-from guardbit.sizing.error_stairs import Stairs
+from guardbit.sizing.error.columns import Results, results
+from guardbit.sizing.error.envelope import Envelope, Part, RealCorner, scale_of
+from guardbit.sizing.error.inputs import Case
+from guardbit.sizing.error.pixels import items_of, pixel_envelope, sum_range
+from guardbit.sizing.error.scan import Scan
+from guardbit.sizing.error.stairs import Stairs
 from guardbit.sizing.passes import is_preloaded
 
 

@@ -6,8 +6,8 @@ from guardbit.arith.rounding import capped_ratio, round_ratio
 from guardbit.arith.words import format_range
 from guardbit.model.enums import Overflow
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_stairs import Stairs
-from guardbit.sizing.error_table import Ints
+from guardbit.sizing.error.stairs import Stairs
+from guardbit.sizing.error.table import Ints
 
 _INT64 = 1 << 61
 

@@ -11,12 +11,12 @@ from math import gcd
 
 import numpy as np
 
-from guardbit.sizing.error_choices import Work, choices
-from guardbit.sizing.error_codes import codes_at
-from guardbit.sizing.error_pixels import items_of
-from guardbit.sizing.error_stairs import Stairs
-from guardbit.sizing.error_subject import Subject, ideal_step, least_ideal
-from guardbit.sizing.error_table import Choices, Ints
+from guardbit.sizing.error.choices import Work, choices
+from guardbit.sizing.error.codes import codes_at
+from guardbit.sizing.error.pixels import items_of
+from guardbit.sizing.error.stairs import Stairs
+from guardbit.sizing.error.subject import Subject, ideal_step, least_ideal
+from guardbit.sizing.error.table import Choices, Ints
 
 # for all the searches of one bound: milliseconds
 WORK = Work(list=1 << 16, table=1 << 21)

@@ -6,11 +6,11 @@ from fractions import Fraction
 import numpy as np
 from numpy.typing import NDArray
 
-from guardbit.sizing.error_codes import codes_at
-from guardbit.sizing.error_pixels import items_of
-from guardbit.sizing.error_subject import Subject
-from guardbit.sizing.error_table import Ints, Item
-from guardbit.study.nudges import Stage, Window, repeated
+from guardbit.sizing.error.codes import codes_at
+from guardbit.sizing.error.pixels import items_of
+from guardbit.sizing.error.subject import Subject
+from guardbit.sizing.error.table import Ints, Item
+from guardbit.study.adversary.nudges import Stage, Window, repeated
 
 # entries of all tables of a window, and how far it reaches at least
 WINDOW_WORK = 1 << 22

@@ -1,9 +1,9 @@
 """The least ideal value by the sum of weighted pixels."""
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_envelope import Envelope, Part
-from guardbit.sizing.error_inputs import Inputs, Weight
-from guardbit.sizing.error_table import Item
+from guardbit.sizing.error.envelope import Envelope, Part
+from guardbit.sizing.error.inputs import Inputs, Weight
+from guardbit.sizing.error.table import Item
 
 
 def sum_range(inputs: Inputs, values: Interval) -> Interval:

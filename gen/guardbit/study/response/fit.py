@@ -24,10 +24,10 @@ from guardbit.model.enums import FitRule, Scale
 from guardbit.model.finding import Finding, Place, SpecError, finding
 from guardbit.model.frequency import FactorFit, Integers, ResponseFit
 from guardbit.model.spec import Auto, Spec
-from guardbit.study.tied import Tied, deviation, gathered, spread, tied
+from guardbit.study.response.tied import Tied, deviation, gathered, spread, tied
 
 if TYPE_CHECKING:
-    from guardbit.study.tangents import Conditions, Outcome
+    from guardbit.study.response.tangents import Conditions, Outcome
 
 TOLERANCE = Fraction(1, 1000)
 """A fit counts as proved when no other can undercut its deviation by more than this share."""
@@ -173,14 +173,14 @@ def _parseval(t: Tied) -> Fraction:
 
 def _polished(t: Tied, start: _Found) -> _Found:
     """Return the start, or what changes of one or two unknowns by one make of it."""
-    from guardbit.study.polish import polished
+    from guardbit.study.response.polish import polished
 
     return _better(start, _found(t, polished(t, start.values)))
 
 
 def _wandered(t: Tied, start: _Found, seconds: float) -> _Found:
     """Return the start, or what a walk from it finds."""
-    from guardbit.study.polish import wandered
+    from guardbit.study.response.polish import wandered
 
     return _better(start, _found(t, wandered(t, start.values, seconds)))
 
@@ -190,7 +190,7 @@ def _exchange(t: Tied, best: _Found, until: float, *, average: bool) -> tuple[_F
 
     `average`: for a bound over integers without the symmetry; what is found then is no fit.
     """
-    from guardbit.study.tangents import first_conditions, solve
+    from guardbit.study.response.tangents import first_conditions, solve
 
     conditions, bound = first_conditions(t), Fraction(0)
     hard = False
@@ -220,8 +220,8 @@ def _is_close(best: _Found, bound: Fraction, share: Fraction) -> bool:
 
 def _touching(t: Tied, outcome: "Outcome", average: bool) -> "Conditions":
     """Return where, and in which direction, a solution leaves the level that was claimed."""
-    from guardbit.study.tangents import Conditions, nothing
-    from guardbit.study.waves import peaks
+    from guardbit.study.response.tangents import Conditions, nothing
+    from guardbit.study.response.waves import peaks
 
     if outcome.values is None:
         return nothing()

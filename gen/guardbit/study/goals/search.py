@@ -3,7 +3,7 @@
 The order of what is minimised is the goal's. Nothing is taken to be monotone, since the
 greatest error is not: a finer intermediate or a wider coefficient can make it larger. So
 every choice of the open words is weighed. Lower bounds of its bits and of its error (see
-`study.screen`) put choices in an order in which the first that reach the goal settle what no
+`screen`) put choices in an order in which the first that reach the goal settle what no
 later one can undercut; each choice before that is resolved and analysed in full.
 """
 
@@ -27,11 +27,11 @@ from guardbit.model.routine import Codes
 from guardbit.model.sizing import Sizing
 from guardbit.model.spec import Auto, GoalTable, Spec
 from guardbit.sizing.frequency import frequency
-from guardbit.study.candidates import Candidates, as_words, candidates
-from guardbit.study.choices import Coefficients, coefficient_choices, with_words
-from guardbit.study.goal_pins import polished, values_of
-from guardbit.study.screen import Screen, screen_of
-from guardbit.study.trials import Judge, Trial, decibels, goal_frames
+from guardbit.study.goals.candidates import Candidates, as_words, candidates
+from guardbit.study.goals.choices import Coefficients, coefficient_choices, with_words
+from guardbit.study.goals.pins import polished, values_of
+from guardbit.study.goals.screen import Screen, screen_of
+from guardbit.study.goals.trials import Judge, Trial, decibels, goal_frames
 
 COARSE, FINE = 6, 40
 """Values over the pixel range that screen all choices, and those that are left to analyse."""

@@ -14,8 +14,8 @@ from functools import cached_property
 from heapq import heappop, heappush
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_envelope import Envelope, Linear
-from guardbit.sizing.error_stairs import Stairs
+from guardbit.sizing.error.envelope import Envelope, Linear
+from guardbit.sizing.error.stairs import Stairs
 
 # pieces that are looked at before what is left is only bounded
 MOST_PIECES = 1500

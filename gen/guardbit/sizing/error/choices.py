@@ -6,12 +6,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_codes import codes_at
-from guardbit.sizing.error_columns import Results, first_stairs
-from guardbit.sizing.error_inputs import Case, Inputs
-from guardbit.sizing.error_pixels import items_of
-from guardbit.sizing.error_subject import Subject
-from guardbit.sizing.error_table import (
+from guardbit.sizing.error.codes import codes_at
+from guardbit.sizing.error.columns import Results, first_stairs
+from guardbit.sizing.error.inputs import Case, Inputs
+from guardbit.sizing.error.pixels import items_of
+from guardbit.sizing.error.subject import Subject
+from guardbit.sizing.error.table import (
     MOST_COST,
     Choices,
     Input,

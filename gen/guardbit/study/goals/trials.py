@@ -18,7 +18,7 @@ from guardbit.model.sizing import ErrorBound, Sizing
 from guardbit.model.spec import GoalTable, Spec
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.sizing.frequency import frequency
-from guardbit.study.choices import with_words
+from guardbit.study.goals.choices import with_words
 
 _DIGITS = Context(prec=50)
 

@@ -3,7 +3,7 @@
 The ideal filter uses the ideal taps in real arithmetic with the same border; its code is clamped
 to the legal codes. The bound is the maximum, over all values of the last sum, of the code of that
 value less the least ideal code that goes with it, and so takes fitting, residues of rounding,
-saturation and clamping together. The contributions (`error_parts`) are maxima of their own: they
+saturation and clamping together. The contributions (`parts`) are maxima of their own: they
 do not add up to it.
 """
 
@@ -15,13 +15,13 @@ from guardbit.arith.intervals import contains
 from guardbit.model.enums import Overflow
 from guardbit.model.filter import Filter
 from guardbit.model.sizing import ErrorBound, Interval, RequantiserSizing
-from guardbit.sizing.error_choices import Work
-from guardbit.sizing.error_inputs import Cases, cases
-from guardbit.sizing.error_parts import ideal_range, parts
-from guardbit.sizing.error_peaks import WORK, Found, peak
-from guardbit.sizing.error_stairs import Stairs
-from guardbit.sizing.error_statistics import dc_gain, rounding_statistics
-from guardbit.sizing.error_subject import Subject, subject
+from guardbit.sizing.error.choices import Work
+from guardbit.sizing.error.inputs import Cases, cases
+from guardbit.sizing.error.parts import ideal_range, parts
+from guardbit.sizing.error.peaks import WORK, Found, peak
+from guardbit.sizing.error.stairs import Stairs
+from guardbit.sizing.error.statistics import dc_gain, rounding_statistics
+from guardbit.sizing.error.subject import Subject, subject
 from guardbit.sizing.place import word_of
 from guardbit.sizing.register import Register
 

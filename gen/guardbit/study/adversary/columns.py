@@ -11,10 +11,10 @@ from itertools import pairwise
 
 import numpy as np
 
-from guardbit.sizing.error_choices import Made
-from guardbit.sizing.error_envelope import RealCorner
-from guardbit.sizing.error_subject import Subject
-from guardbit.study.nudges import Option, Stage, Window
+from guardbit.sizing.error.choices import Made
+from guardbit.sizing.error.envelope import RealCorner
+from guardbit.sizing.error.subject import Subject
+from guardbit.study.adversary.nudges import Option, Stage, Window
 
 # how far a result is moved from where the real optimum has it, and the sum
 _MOST_STEPS = 6

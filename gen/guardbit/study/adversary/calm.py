@@ -14,9 +14,9 @@ from numpy.typing import NDArray
 
 from guardbit.arith.words import clamp
 from guardbit.model.enums import Overflow
-from guardbit.sizing.error_codes import codes_at
-from guardbit.sizing.error_subject import Subject
-from guardbit.sizing.error_table import Ints
+from guardbit.sizing.error.codes import codes_at
+from guardbit.sizing.error.subject import Subject
+from guardbit.sizing.error.table import Ints
 from guardbit.sizing.lines import constant_value
 from guardbit.sizing.passes import start_value
 from guardbit.sizing.place import word_of

@@ -33,9 +33,9 @@ from typing import Protocol
 
 import numpy as np
 
-from guardbit.study.quiet import quiet_output
-from guardbit.study.tied import Tied
-from guardbit.study.waves import Complexes, Floats, basis, grid
+from guardbit.study.response.quiet import quiet_output
+from guardbit.study.response.tied import Tied
+from guardbit.study.response.waves import Complexes, Floats, basis, grid
 
 DIRECTIONS = 16
 _TOLERANCE = 1e-6

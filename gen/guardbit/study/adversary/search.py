@@ -16,11 +16,11 @@ from guardbit.arith.words import clamp
 from guardbit.model.filter import Filter
 from guardbit.model.sizing import End, Sizing
 from guardbit.model.vectors import Codes
-from guardbit.sizing.error_inputs import Case, axis_classes, cases, class_case
-from guardbit.sizing.error_peaks import Found, peak
-from guardbit.sizing.error_subject import Subject, subject
-from guardbit.study.attempt import attempt
-from guardbit.study.pixels import Pixels, pixels_at
+from guardbit.sizing.error.inputs import Case, axis_classes, cases, class_case
+from guardbit.sizing.error.peaks import Found, peak
+from guardbit.sizing.error.subject import Subject, subject
+from guardbit.study.adversary.attempt import attempt
+from guardbit.study.adversary.pixels import Pixels, pixels_at
 
 # classes that are tried, by their bounds
 MOST_CLASSES = 4

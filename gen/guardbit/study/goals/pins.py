@@ -17,9 +17,9 @@ from guardbit.model.goal import GoalSearch, Words
 from guardbit.model.sizing import Sizing
 from guardbit.model.spec import Auto, Pinned, Spec
 from guardbit.spec.pinning import PinValue, pinned_text
-from guardbit.study.choices import with_words
-from guardbit.study.response import fit_response
-from guardbit.study.trials import Judge, Trial
+from guardbit.study.goals.choices import with_words
+from guardbit.study.goals.trials import Judge, Trial
+from guardbit.study.response.fit import fit_response
 
 SECONDS = 30.0
 """How long the `response` fit of the words found may take."""

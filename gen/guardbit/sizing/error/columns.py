@@ -16,15 +16,15 @@ from guardbit.arith.rounding import ratio, unlimited
 from guardbit.model.enums import Rounding
 from guardbit.model.filter import Filter, Pass
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_envelope import (
+from guardbit.sizing.error.envelope import (
     Envelope,
     RealCorner,
     clipped_corners,
     lower_hull,
 )
-from guardbit.sizing.error_inputs import Case, Inputs
-from guardbit.sizing.error_pixels import pixel_envelope, sum_range
-from guardbit.sizing.error_stairs import Stairs
+from guardbit.sizing.error.inputs import Case, Inputs
+from guardbit.sizing.error.pixels import pixel_envelope, sum_range
+from guardbit.sizing.error.stairs import Stairs
 from guardbit.sizing.noise import NOTHING, Span, rounding_error
 from guardbit.sizing.passes import is_preloaded, start_value
 

@@ -22,7 +22,7 @@ from guardbit.model.filter import Filter, Pass, PixelFormat, Requantiser
 from guardbit.model.goal import Words
 from guardbit.sizing.lines import COLUMN, ROW, axis_lines
 from guardbit.sizing.passes import is_vertical_first
-from guardbit.study.choices import Coefficients, Sums, ideal_sums
+from guardbit.study.goals.choices import Coefficients, Sums, ideal_sums
 
 Pair = tuple[int, int]
 

@@ -20,10 +20,10 @@ from guardbit.arith.words import clamp
 from guardbit.model.enums import Overflow
 from guardbit.model.filter import Filter, Pass
 from guardbit.model.sizing import ErrorPart, Interval
-from guardbit.sizing.error_columns import residues
-from guardbit.sizing.error_inputs import Case, Cases, Form, form
-from guardbit.sizing.error_pixels import pixel_envelope, sum_range
-from guardbit.sizing.error_subject import Subject, subject
+from guardbit.sizing.error.columns import residues
+from guardbit.sizing.error.inputs import Case, Cases, Form, form
+from guardbit.sizing.error.pixels import pixel_envelope, sum_range
+from guardbit.sizing.error.subject import Subject, subject
 from guardbit.sizing.noise import NOTHING, Span
 from guardbit.sizing.passes import is_preloaded, start_value
 

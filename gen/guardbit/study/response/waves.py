@@ -9,7 +9,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from guardbit.study.tied import Tied
+from guardbit.study.response.tied import Tied
 
 Floats = NDArray[np.float64]
 Complexes = NDArray[np.complex128]

@@ -20,8 +20,16 @@ from guardbit.model.finding import SpecError, finding
 from guardbit.model.goal import Words
 from guardbit.model.spec import Auto, Spec
 from guardbit.sizing.register import LEAST_BITS
-from guardbit.study.choices import Coefficients
-from guardbit.study.screen import PLACES, Screen, between, chained, product, requantiser, start
+from guardbit.study.goals.choices import Coefficients
+from guardbit.study.goals.screen import (
+    PLACES,
+    Screen,
+    between,
+    chained,
+    product,
+    requantiser,
+    start,
+)
 
 Whole = NDArray[np.int64]
 Floats = NDArray[np.float64]

@@ -5,15 +5,15 @@ from dataclasses import replace
 from typing import cast
 
 from guardbit.model.sizing import Interval
-from guardbit.sizing.error_choices import Made, Work, choices, made_results
-from guardbit.sizing.error_inputs import Inputs
-from guardbit.sizing.error_peaks import Found, peak
-from guardbit.sizing.error_pixels import items_of
-from guardbit.sizing.error_subject import Subject
-from guardbit.sizing.error_table import Choices
+from guardbit.sizing.error.choices import Made, Work, choices, made_results
+from guardbit.sizing.error.inputs import Inputs
+from guardbit.sizing.error.peaks import Found, peak
+from guardbit.sizing.error.pixels import items_of
+from guardbit.sizing.error.subject import Subject
+from guardbit.sizing.error.table import Choices
 from guardbit.sizing.passes import is_vertical_first
-from guardbit.study.calm import calm_pixels
-from guardbit.study.nearby import near_counts
+from guardbit.study.adversary.calm import calm_pixels
+from guardbit.study.adversary.nearby import near_counts
 
 Pixels = Mapping[tuple[int, int], int]
 
@@ -43,7 +43,7 @@ def pixels_at(s: Subject, found: Found) -> Iterator[Pixels]:
 def _from_columns(s: Subject, found: Found) -> Iterator[Pixels]:
     sides = sides_of(s)
     if sides is not None:
-        from guardbit.study.columns import results_near
+        from guardbit.study.adversary.columns import results_near
 
         for wanted in results_near(replace(s, clamped=found.clamped), sides, found.n):
             yield placed(s, sides, wanted)

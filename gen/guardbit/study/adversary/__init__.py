@@ -1,0 +1,1 @@
+"""Frames with as great an error as can be found, held against the bound."""

@@ -1,0 +1,1 @@
+"""The search for word lengths that reach a goal."""

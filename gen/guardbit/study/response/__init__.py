@@ -1,0 +1,1 @@
+"""The fit for the least deviation of the frequency response."""
