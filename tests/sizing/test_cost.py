@@ -39,7 +39,7 @@ def test_half_sample_filter_of_h264() -> None:
     found = costs("[kernel]\ntaps = [[1, -5, 20, 20, -5, 1]]\ndivisor = 32\n[input]\nbits = 8\n")
     (p,) = found.passes
     assert (p.reads, p.multipliers, p.shifts, p.adders) == (6, 4, 2, 5)
-    assert (p.folded_multipliers, p.constants) == (2, 1)
+    assert (p.folded_multipliers, p.magnitudes, p.constants) == (2, 3, 1)
     # 1, 5 = 4 + 1, 20 = 16 + 4, twice each
     assert p.signed_digit_adders == 2 * (1 + 2 + 2) - 1
     assert p.constant_bits == 6 * 6

@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 
 from guardbit.fit.resolve import resolve
+from guardbit.model.decimals import lower, lower_decibels, upper_decibels
 from guardbit.model.enums import WordLength
 from guardbit.model.filter import Filter
 from guardbit.model.finding import SpecError
@@ -356,9 +357,39 @@ def test_frames_that_do_not_fit(tmp_path: Path) -> None:
         assert caught.value.findings[0].place.key == "goal.frames"
 
 
+@pytest.mark.parametrize(
+    ("more", "kind"),
+    [("[image]\nwidth = [1, 3]", "size"), ("[image]\nheight = [4, 9]", "size"), ("range", "codes")],
+)
+def test_frames_outside_the_contract_do_not_count(tmp_path: Path, more: str, kind: str) -> None:
+    """A frame without legal outputs shows no error, and any ratio would be reached."""
+    spec = one_pass("1, 3, 1", 9, 'snr = 90\nframes = ["a.npy"]', "" if more == "range" else more)
+    spec = replace(spec, path=str(tmp_path / "demo.toml"))
+    if more == "range":
+        spec = replace(spec, input=replace(spec.input, range=(0, 9)))
+    np.save(tmp_path / "a.npy", np.full((3, 4), 12, np.uint8))
+    with pytest.raises(SpecError) as caught:
+        search(spec)
+    assert [each.kind for each in caught.value.findings] == [f"goal-frame-{kind}"]
+
+
 def test_a_fixed_intermediate_is_not_open() -> None:
     spec = two_passes("error = 3", "bits = 6", "bits = 8\nfrac = 2")
     assert isinstance(spec.accumulator.bits, Auto)
     found = search(spec)
     assert found.words.intermediate_bits is None
     assert [binding.word for binding in found.bindings] == [ACCUMULATOR]
+
+
+def test_frames_without_output_reach_no_ratio() -> None:
+    """No place of an image one pixel wide has all taps inside it."""
+    spec = one_pass("1, 3, 1", 9, 'snr = 1\nframes = ["a.npy"]', "[image]\nextent = 'valid'")
+    with pytest.raises(SpecError) as caught:
+        search(spec, [np.full((4, 1, 1), 5)])
+    assert [each.kind for each in caught.value.findings] == ["goal-unreachable"]
+
+
+@pytest.mark.parametrize("tenths", [1, 305, 499, 733, 1999])
+def test_a_ratio_of_decibels_is_shown_as_these(tenths: int) -> None:
+    level = Fraction(tenths, 10)
+    assert lower_decibels(power_ratio(level)) == upper_decibels(power_ratio(level)) == lower(level)

@@ -58,6 +58,7 @@ def test_no_error_has_no_ratio_and_illegal_frames_do_not_count() -> None:
     f = sized("[kernel]\ntaps = [[1]]\n[input]\nbits = 8\nrange = [0, 9]\n").filter
     assert snr(f, [np.array([[[3]]])]) is None
     assert measured(f, [np.array([[[10]]])]) is None
+    assert snr(f, [np.array([[[10]]])]) == snr(f, []) == 0
 
 
 def test_the_ratio_is_that_of_floats_on_a_photograph() -> None:
@@ -122,6 +123,17 @@ def test_sums_that_overflow_are_counted() -> None:
     assert (wrapped.sums, wrapped.overflowed, clamped.overflowed) == (2, 1, 1)
     # 75 wraps to -53, which the output clamps to 0; it clamps to 63
     assert (wrapped.largest, clamped.largest) == (75, 12)
+
+
+def test_no_width_makes_an_unsigned_register_safe_from_sums_below_zero() -> None:
+    tables = "[kernel]\ntaps = [[-1, 2]]\n[input]\nbits = 4\n[accumulator]\nbits = 8\n"
+    unsigned = tables + "signed = false\noverflow = 'wrap'\n"
+    frame = np.array([[[9], [3], [1]]])
+    (register,) = practice(sized(unsigned), [frame]).registers
+    # -9 + 6 and -3 + 2 are below zero, and so is the last with a constant border of 0
+    assert register.is_never_safe and register.rows[-1].overflowed > 0
+    (signed,) = practice(sized(tables), [frame]).registers
+    assert not signed.is_never_safe and signed.rows[-1].overflowed == 0
 
 
 def test_a_photograph_is_taken_as_it_is_where_it_fits() -> None:

@@ -10,7 +10,8 @@ class PassCost:
     `reads`: pixels read, one for each tap that is not zero. `multipliers`: taps that are no
     power of two; `shifts`: those that are. `adders`: two-input adders of the sum.
     `folded_multipliers`: the multipliers left when taps of equal magnitude at places mirrored
-    in the pass's centre share one, their pixels added or subtracted first. `constants`:
+    in the pass's centre share one, their pixels added or subtracted first. `magnitudes`: distinct
+    ones of the taps, all that a store of coefficients with signs apart has to hold. `constants`:
     distinct odd factors of the magnitudes, 1 left out: the multiplier blocks that a fabric
     without multipliers needs. `signed_digit_adders`: adders in all where each tap is a sum of
     shifted pixels in canonical signed digits. `constant_bits`: the coefficients as a table.
@@ -23,6 +24,7 @@ class PassCost:
     shifts: int
     adders: int
     folded_multipliers: int
+    magnitudes: int
     constants: int
     signed_digit_adders: int
     constant_bits: int

@@ -66,11 +66,15 @@ class Narrowed:
 
 @dataclass(frozen=True)
 class RegisterPractice:
-    """A register from six bits under its safe width up to that: a row per width and policy."""
+    """A register from six bits under its safe width up to that: a row per width and policy.
+
+    Where `is_never_safe`, an unsigned register with sums below 0, `safe` is a signed one's width.
+    """
 
     register: str
     safe: int
     rows: tuple[Narrowed, ...]
+    is_never_safe: bool = False
 
 
 @dataclass(frozen=True)

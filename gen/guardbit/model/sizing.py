@@ -84,6 +84,11 @@ class RegisterSizing:
     held_exact: bool = True
     held_witnesses: tuple[Witness, ...] = ()
 
+    @property
+    def is_never_safe(self) -> bool:
+        """Return whether no width holds every sum: an unsigned register with sums below 0."""
+        return not self.signed and self.partial.low < 0
+
 
 @dataclass(frozen=True)
 class TapOrder:

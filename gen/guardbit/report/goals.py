@@ -3,12 +3,12 @@
 from rich.table import Table
 from rich.text import Text
 
-from guardbit.model.decimals import lower, upper
+from guardbit.model.decimals import lower, lower_decibels, upper
 from guardbit.model.enums import WordLength
 from guardbit.model.frequency import FactorFit, ResponseFit
 from guardbit.model.goal import Binding, GoalSearch, Shortfall
 from guardbit.report.look import Look, drawn
-from guardbit.report.text import grouped, plural, ratio
+from guardbit.report.text import grouped, plural
 
 _LABELS = 22
 _NAMES = {
@@ -31,7 +31,7 @@ def goal_text(look: Look, found: GoalSearch) -> str:
     if found.figures.response is not None:
         table.add_row("    response", f"{upper(found.figures.response)} deviation at most")
     if found.figures.snr is not None:
-        table.add_row("    signal to noise", f"a power ratio of {ratio(found.figures.snr)}")
+        table.add_row("    signal to noise", f"{lower_decibels(found.figures.snr)} dB at least")
     if found.bindings:
         table.add_row(Text.assemble(("  binds", "bold")), "")
     for binding in found.bindings:
@@ -63,8 +63,8 @@ def _missed(missed: Shortfall) -> str:
             return f"error {upper(missed.reached)} LSB, over {upper(missed.wanted)}"
         case "response":
             return f"response {upper(missed.reached)}, over {upper(missed.wanted)}"
-    reached, wanted = ratio(missed.reached), ratio(missed.wanted)
-    return f"signal to noise a power ratio of {reached}, under {wanted}"
+    reached, wanted = lower_decibels(missed.reached), lower_decibels(missed.wanted)
+    return f"signal to noise {reached} dB, under {wanted}"
 
 
 def fit_text(look: Look, found: ResponseFit) -> str:

@@ -6,13 +6,19 @@ Both are drawn from the same tables, so that they cannot differ.
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
-from math import log10
 
 from rich.table import Table
 from rich.text import Text
 
 from guardbit.model.cost import PassCost
-from guardbit.model.decimals import lower, signed, upper
+from guardbit.model.decimals import (
+    lower,
+    lower_decibels,
+    nearest,
+    signed,
+    upper,
+    upper_decibels,
+)
 from guardbit.model.frequency import Frequency, Gain
 from guardbit.model.practice import Measured, MeasuredRounding, Narrowed, RegisterPractice
 from guardbit.model.sheet import Sheet
@@ -21,9 +27,12 @@ from guardbit.report.cautions import CAUTIONS
 from guardbit.report.heads import head, signature
 from guardbit.report.look import Look, drawn
 from guardbit.report.text import grouped, interval, plural, ratio, shown
+from guardbit.report.widths import needed, order_text, spare
 
 _LABELS = 26
 _NOTHING = "-"
+_ATTAINED = "legal frames attain both ends"
+_UNATTAINED = "never exceeded, but no frame need attain it"
 
 
 @dataclass(frozen=True)
@@ -106,16 +115,18 @@ def _registers(registers: Sequence[RegisterSizing], orders: Sequence[TapOrder]) 
         "final sum": [_range(interval(r.final), r.exact) for r in registers],
         "partial sums": [_range(interval(r.partial), r.exact) for r in registers],
         "holds": [_range(interval(r.held), r.held_exact) for r in registers],
-        "needed by forbid": [plural(r.bits_forbid, "bit") for r in registers],
-        "needed by saturate": [f"{plural(r.bits_forbid, 'bit')} not to act" for r in registers],
-        "needed by wrap": [plural(r.bits_wrap, "bit") for r in registers],
-        "spare bits": [signed(str(r.spare)) for r in registers],
+        "needed by forbid": [needed(r, r.bits_forbid, r.partial) for r in registers],
+        "needed by saturate": [
+            f"{needed(r, r.bits_forbid, r.partial)} not to act" for r in registers
+        ],
+        "needed by wrap": [needed(r, r.bits_wrap, r.final) for r in registers],
+        "spare bits": [spare(r) for r in registers],
         "headroom": [
             "unlimited" if r.headroom is None else f"{ratio(r.headroom)} to 1" for r in registers
         ],
         "rule: sum of |h|": [plural(r.rule_l1, "bit") for r in registers],
         "rule: tap count": [plural(r.rule_count, "bit") for r in registers],
-        "best tap order": [_order(order) for order in orders],
+        "best tap order": [order_text(order) for order in orders],
     }
     return Block("register", tuple(r.name for r in registers), _rows(rows))
 
@@ -126,13 +137,6 @@ def _rows(rows: dict[str, list[str]]) -> tuple[tuple[str, ...], ...]:
 
 def _range(text: str, exact: bool) -> str:
     return text if exact else f"{text} (bound)"
-
-
-def _order(order: TapOrder) -> str:
-    found = f"{plural(order.best, 'bit')} found"
-    if order.best == order.contract:
-        found = f"the contract's, {plural(order.contract, 'bit')}"
-    return found if order.is_proved_best else f"{found}, floor {order.floor}"
 
 
 def _requantisers(sheet: Sheet) -> Block:
@@ -149,11 +153,11 @@ def _requantisers(sheet: Sheet) -> Block:
 def _error(error: ErrorBound) -> Block:
     rows = [(part.cause, *_ends(part.low, part.high)) for part in error.parts]
     rows.append(("bound in all", *_ends(error.low, error.high)))
-    notes = ["each end is attained by a legal frame"] if error.exact else []
+    quiet = "for inputs that make no register wrap or saturate; " if error.assumes_no_wrap else ""
+    notes = [f"bound in all: {quiet}{_ATTAINED if error.exact else _UNATTAINED}"]
     if error.overall is not None:
         rows.append(("for any input", *_ends(*error.overall)))
-    if error.assumes_no_wrap:
-        notes.append("bound in all: for inputs that make no register wrap or saturate")
+        notes.append(f"for any input: {_UNATTAINED}")
     return Block("error in LSB", ("least", "greatest"), tuple(rows), tuple(notes))
 
 
@@ -181,19 +185,15 @@ def _moments(values: tuple[Fraction, Fraction] | None) -> tuple[str, str]:
     if values is None:
         return _NOTHING, _NOTHING
     mean, variance = values
-    return signed(_near(mean)), _near(variance)
+    return signed(nearest(mean)), nearest(variance)
 
 
 def _gain(gain: DcGain | None) -> Iterator[Block]:
     if gain is not None:
-        relative = _NOTHING if gain.relative is None else f"{_near(100 * gain.relative)} %"
-        row = ("gain", _near(gain.ideal), _near(gain.fitted), relative, _near(gain.at_full_scale))
-        yield Block("DC", ("ideal", "fitted", "error", "LSB at full scale"), (row,))
-
-
-def _near(value: Fraction) -> str:
-    """Return the nearest decimal of six places."""
-    return lower(Fraction(round(value * 10**6), 10**6))
+        relative = _NOTHING if gain.relative is None else f"{nearest(100 * gain.relative)} %"
+        ideal, fitted, at_full_scale = map(nearest, (gain.ideal, gain.fitted, gain.at_full_scale))
+        columns = ("ideal", "fitted", "error", "LSB at full scale")
+        yield Block("DC", columns, (("gain", ideal, fitted, relative, at_full_scale),))
 
 
 def _response(frequency: Frequency) -> Block:
@@ -202,14 +202,14 @@ def _response(frequency: Frequency) -> Block:
         (
             name,
             _place(each),
-            _near(each.ideal),
-            _near(each.fitted),
+            nearest(each.ideal),
+            nearest(each.fitted),
             _decibels(abs(each.deviation), frequency),
         )
         for name, each in zip(names, frequency.gains, strict=True)
     ]
     largest = frequency.largest
-    at = ", ".join(_near(part) for part in largest.at)
+    at = ", ".join(nearest(part) for part in largest.at)
     rows.append(("largest deviation", at, "", "", _decibels(largest.guaranteed, frequency)))
     note = (
         f"no frequency, on a grid or between, deviates by more than {upper(largest.guaranteed, 9)}"
@@ -227,17 +227,8 @@ def _decibels(value: Fraction, frequency: Frequency) -> str:
     """Return a deviation relative to the DC gain, or to the largest where that is zero."""
     if not value:
         return "none"
-    return f"{20 * _log10(value / frequency.reference):.2f} dB" if frequency.reference else _NOTHING
-
-
-def _log10(value: Fraction) -> float:
-    # numerators and denominators may be beyond a float
-    return _log10_whole(value.numerator) - _log10_whole(value.denominator)
-
-
-def _log10_whole(value: int) -> float:
-    shift = max(value.bit_length() - 64, 0)
-    return log10(value >> shift) + shift * log10(2)
+    reference = frequency.reference
+    return f"{upper_decibels((value / reference) ** 2)} dB" if reference else _NOTHING
 
 
 _COSTS: Sequence[tuple[str, Callable[[PassCost], str]]] = (
@@ -246,7 +237,8 @@ _COSTS: Sequence[tuple[str, Callable[[PassCost], str]]] = (
     ("taps that only shift", lambda p: grouped(p.shifts)),
     ("adders", lambda p: grouped(p.adders)),
     ("multipliers, folded", lambda p: grouped(p.folded_multipliers)),
-    ("constants, odd, distinct", lambda p: grouped(p.constants)),
+    ("magnitudes, distinct", lambda p: grouped(p.magnitudes)),
+    ("odd factors, distinct", lambda p: grouped(p.constants)),
     ("signed-digit adders", lambda p: grouped(p.signed_digit_adders)),
     ("coefficient bits", lambda p: grouped(p.constant_bits)),
     (
@@ -268,8 +260,8 @@ def _measured(photographs: Sequence[str], found: Measured) -> Block:
     rows = (
         ("error, least", signed(lower(found.least))),
         ("error, greatest", signed(upper(found.greatest))),
-        ("error, mean", signed(_near(found.mean))),
-        ("error, variance", _near(found.variance)),
+        ("error, mean", signed(nearest(found.mean))),
+        ("error, variance", nearest(found.variance)),
         ("signal to noise", _snr(found.snr)),
     )
     title = f"measured, {grouped(found.outputs)} codes"
@@ -279,7 +271,7 @@ def _measured(photographs: Sequence[str], found: Measured) -> Block:
 def _snr(value: Fraction | None) -> str:
     if value is None:
         return "no error"
-    return f"{10 * _log10(value):.2f} dB" if value else "no signal"
+    return f"{lower_decibels(value)} dB" if value else "no signal"
 
 
 def _practice(found: RegisterPractice) -> Block:
@@ -287,7 +279,10 @@ def _practice(found: RegisterPractice) -> Block:
         (f"{each.bits} bits, {each.policy.value}", *_narrowed(each)) for each in found.rows
     )
     columns = ("sums overflow", "codes differ", "by at most", "by, on average")
-    note = f"{found.register} alone, on the photographs; {found.safe} bits are safe for every frame"
+    safe = f"{found.safe} bits are safe for every frame"
+    if found.is_never_safe:
+        safe = "unsigned, it is safe at no width: sums go below 0"
+    note = f"{found.register} alone, on the photographs; {safe}"
     return Block(f"{found.register}, narrower", columns, rows, (note,))
 
 
@@ -297,7 +292,7 @@ def _narrowed(each: Narrowed) -> tuple[str, ...]:
         _share(each.overflowed, each.sums),
         _share(each.differing, each.outputs),
         f"{grouped(each.largest)} LSB",
-        f"{_near(mean)} LSB",
+        f"{nearest(mean)} LSB",
     )
 
 

@@ -6,9 +6,18 @@ from fractions import Fraction
 from rich.table import Table
 from rich.text import Text
 
-from guardbit.model.decimals import lower, signed, upper
+from guardbit.model.decimals import lower, nearest, signed, upper
 from guardbit.model.filter import Pass, Requantiser
-from guardbit.model.sizing import ErrorBound, RegisterSizing, RequantiserSizing, Sizing
+from guardbit.model.sizing import (
+    DcGain,
+    ErrorBound,
+    Interval,
+    RegisterSizing,
+    RequantiserSizing,
+    RoundingStatistics,
+    Sizing,
+    TapOrder,
+)
 from guardbit.report.heads import head, words
 from guardbit.report.look import Look, drawn
 from guardbit.report.text import interval, plural, ratio
@@ -18,16 +27,20 @@ _BAR = 24
 _CONDITION = "    (the bound in all: for inputs that make no register wrap or saturate)"
 
 
-def size_text(look: Look, sizing: Sizing) -> str:
-    """Return the text of `size` for one filter."""
+def size_text(look: Look, sizing: Sizing, orders: Sequence[TapOrder] = ()) -> str:
+    """Return the text of `size` for one filter.
+
+    Of `orders`, one for each register, those are told that need fewer bits than the contract's.
+    """
     return drawn(
         look,
         *head(look, sizing.filter),
         Text(),
-        _passes(look, sizing),
+        _passes(look, sizing, orders),
         Text(),
         _error(look, sizing.error),
         *([Text(_CONDITION)] if sizing.error.assumes_no_wrap else []),
+        *([Text(), _gain(sizing.error.gain)] if sizing.error.gain is not None else []),
     )
 
 
@@ -39,20 +52,40 @@ def _grid(columns: int) -> Table:
     return table
 
 
-def _passes(look: Look, sizing: Sizing) -> Table:
+def _passes(look: Look, sizing: Sizing, orders: Sequence[TapOrder]) -> Table:
     table = _grid(len(sizing.registers))
     table.add_row(_title("register"), *(words(look, r.name, "bold") for r in sizing.registers))
     for label, show in _REGISTER_ROWS:
         table.add_row(f"    {label}", *(show(look, r) for r in sizing.registers))
     policies = [Text(_policy(each)) for each in sizing.filter.passes]
     table.add_row("    policy", *policies)
+    if any(each.best < each.contract for each in orders):
+        table.add_row("    best tap order", *(order_text(each) for each in orders))
     table.add_row(
         _title("requantiser"), *(words(look, r.name, "bold") for r in sizing.requantisers)
     )
     table.add_row("    rule", *(Text(_rule(p.requantiser)) for p in sizing.filter.passes))
     for label, tell in _REQUANTISER_ROWS:
         table.add_row(f"    {label}", *(tell(r) for r in sizing.requantisers))
+    found = {each.name: each for each in sizing.error.rounding}
+    if found:
+        told = (_moments(found.get(r.name)) for r in sizing.requantisers)
+        table.add_row("    rounding, if busy", *told)
     return table
+
+
+def order_text(order: TapOrder) -> str:
+    """Return what the best tap order found needs, and what none undercuts."""
+    found = f"{plural(order.best, 'bit')} found"
+    if order.best == order.contract:
+        found = f"the contract's, {plural(order.contract, 'bit')}"
+    return found if order.is_proved_best else f"{found}, floor {order.floor}"
+
+
+def _moments(found: RoundingStatistics | None) -> str:
+    if found is None:
+        return "-"
+    return f"mean {signed(nearest(found.mean))}, variance {nearest(found.variance)}"
 
 
 def _bold(text: str) -> Text:
@@ -75,13 +108,14 @@ def _given(_: Look, register: RegisterSizing) -> Text:
 def _bar(look: Look, register: RegisterSizing) -> Text:
     """Return one mark per bit (or two, or four): needed, spare, missing."""
     scale = next(s for s in (1, 2, 4, 8) if max(register.bits, register.bits_forbid) <= _BAR * s)
-    needed, given = -(-register.bits_forbid // scale), -(-register.bits // scale)
+    wanted, given = -(-register.bits_forbid // scale), -(-register.bits // scale)
     full, empty, missing = "■□▲" if look.fine else "#.!"
+    enough = register.spare >= 0 and not register.is_never_safe
     return Text.assemble(
-        (full * min(needed, given), "green" if register.spare >= 0 else "red"),
-        empty * max(0, given - needed),
-        (missing * max(0, needed - given), "bold red"),
-        f" needs {register.bits_forbid} of {register.bits}",
+        (full * min(wanted, given), "green" if enough else "red"),
+        empty * max(0, given - wanted),
+        (missing * max(0, wanted - given), "bold red"),
+        f" needs {register.bits_forbid} of {register.bits}{', signed' * register.is_never_safe}",
     )
 
 
@@ -96,8 +130,21 @@ def _headroom(_: Look, register: RegisterSizing) -> Text:
     return Text.assemble((f"{ratio(register.headroom)} to 1", style))
 
 
+def needed(register: RegisterSizing, bits: int, sums: Interval) -> str:
+    """Return the bits that sums need; a signed register's where an unsigned one cannot do."""
+    said = plural(bits, "bit")
+    return said if register.signed or sums.low >= 0 else f"{said} signed"
+
+
+def spare(register: RegisterSizing) -> str:
+    """Return the spare bits of a register."""
+    return "none: sums below 0" if register.is_never_safe else signed(str(register.spare))
+
+
 def _spare(_: Look, register: RegisterSizing) -> Text:
-    return Text.assemble((signed(str(register.spare)), "" if register.spare >= 0 else "bold red"))
+    if register.is_never_safe:
+        return Text.assemble((spare(register), "bold red"))
+    return Text.assemble((spare(register), "" if register.spare >= 0 else "bold red"))
 
 
 _REGISTER_ROWS: Sequence[tuple[str, Callable[[Look, RegisterSizing], Text]]] = (
@@ -105,8 +152,8 @@ _REGISTER_ROWS: Sequence[tuple[str, Callable[[Look, RegisterSizing], Text]]] = (
     ("bits used", _bar),
     ("final sum", lambda _, r: Text(interval(r.final) + _ends(r))),
     ("partial sums", lambda _, r: Text(interval(r.partial) + _ends(r))),
-    ("needed by forbid", lambda _, r: Text(plural(r.bits_forbid, "bit"))),
-    ("needed by wrap", lambda _, r: Text(plural(r.bits_wrap, "bit"))),
+    ("needed by forbid", lambda _, r: Text(needed(r, r.bits_forbid, r.partial))),
+    ("needed by wrap", lambda _, r: Text(needed(r, r.bits_wrap, r.final))),
     ("spare bits", _spare),
     ("headroom", _headroom),
     ("rule: sum of |h|", lambda _, r: Text(plural(r.rule_l1, "bit"))),
@@ -133,14 +180,24 @@ def _rule(requantiser: Requantiser) -> str:
 
 
 def _error(look: Look, error: ErrorBound) -> Table:
-    table = _grid(2)
+    table = _grid(3)
     table.add_row(_title("error in LSB"), _bold("least"), _bold("greatest"))
     for part in error.parts:
         table.add_row(Text("    ").append(words(look, part.cause)), *_pair(part.low, part.high))
-    table.add_row("    bound in all", *_pair(error.low, error.high))
+    attained = ["attained"] if error.exact else []
+    table.add_row("    bound in all", *_pair(error.low, error.high), *attained)
     if error.overall is not None:
         table.add_row("    for any input", *_pair(*error.overall))
     return table
+
+
+def _gain(gain: DcGain) -> Text:
+    label = ("  DC gain".ljust(_LABELS + 2), "bold")
+    ideal, fitted = nearest(gain.ideal), nearest(gain.fitted)
+    if gain.error == 0:
+        return Text.assemble(label, f"{fitted}, as ideal")
+    off = signed(nearest(gain.at_full_scale))
+    return Text.assemble(label, f"{fitted} for {ideal}: {off} LSB at full scale")
 
 
 def _pair(low: Fraction, high: Fraction) -> tuple[Text, Text]:

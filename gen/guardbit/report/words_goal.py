@@ -23,9 +23,13 @@ WORDS: dict[str, tuple[str, str]] = {
         "{path} has {got} channels, and the filter works on {wanted}.",
         "Name an image with as many channels as image.channels.",
     ),
+    "goal-frame-size": (
+        "{path} is {width} pixels wide and {height} high, which no image of the filter is.",
+        "Name an image that image.width and image.height allow.",
+    ),
     "goal-frame-codes": (
-        "{path} holds codes from {least} to {most}, which are not all codes of {bits} bits.",
-        "Name an image in the input format.",
+        "{path} holds codes from {least} to {most}, and those of the input are {low} to {high}.",
+        "Name an image whose codes are all in the input's range.",
     ),
     "goal-too-many": (
         "The open words have {count} combinations, and nothing narrows them down: at most {most} "

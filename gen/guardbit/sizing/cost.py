@@ -40,6 +40,7 @@ def _pass_cost(name: str, p: Pass, channels: int) -> PassCost:
         shifts=len(terms) - len(real),
         adders=max(len(terms) - 1, 0),
         folded_multipliers=_folded(real, terms),
+        magnitudes=len({abs(term.integer) for term in terms}),
         constants=len(factors),
         signed_digit_adders=max(digits - 1, 0),
         constant_bits=len(terms) * p.kernel.bits,

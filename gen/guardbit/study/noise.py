@@ -14,15 +14,19 @@ def snr(f: Filter, frames: Sequence[Codes]) -> Fraction | None:
     """Return the ratio of signal power to error power over all outputs of the frames.
 
     Signal power is the mean square of the clamped ideal code less the output pedestal, error
-    power that of output code minus clamped ideal code. None: no error, or no output. Frames are
-    (rows, columns, channels) of legal codes, and the filter's widths are resolved.
+    power that of output code minus clamped ideal code. None: no error. Zero also where there is no
+    output: frames that show nothing must not reach a goal. Frames are (rows, columns, channels) of
+    legal codes, and the filter's widths are resolved.
     """
     found = measured(f, frames)
-    return None if found is None else found.snr
+    return Fraction(0) if found is None else found.snr
 
 
 def measured(f: Filter, frames: Sequence[Codes]) -> Measured | None:
-    """Return the error over all outputs of the frames; None if they have no output."""
+    """Return the error over all outputs of the frames; None if they have no output.
+
+    Frames with other codes than legal ones are left out: their error is not defined.
+    """
     scale, ideal = ideal_filter(f)
     made = [
         deviation(f, scale, ideal, frame, respond(f, frame).output)

@@ -55,7 +55,7 @@ def _register(
             accumulator = replace(f.passes[which].accumulator, bits=bits, overflow=policy)
             narrow = _with(f, which, accumulator)
             rows.append(_narrowed(narrow, which, runs))
-    return RegisterPractice(register.name, safe, tuple(rows))
+    return RegisterPractice(register.name, safe, tuple(rows), register.is_never_safe)
 
 
 def _narrowed(narrow: Filter, which: int, runs: Sequence[Run]) -> Narrowed:

@@ -18,7 +18,7 @@ from numpy.typing import NDArray
 
 from guardbit.fit.open import open_words
 from guardbit.fit.resolve import resolve
-from guardbit.model.decimals import upper
+from guardbit.model.decimals import lower_decibels, upper
 from guardbit.model.enums import FitRule, Preload, WordLength
 from guardbit.model.filter import Filter
 from guardbit.model.finding import Finding, Place, SpecError, finding
@@ -31,7 +31,7 @@ from guardbit.study.goals.candidates import Candidates, as_words, candidates
 from guardbit.study.goals.choices import Coefficients, coefficient_choices, with_words
 from guardbit.study.goals.pins import polished, values_of
 from guardbit.study.goals.screen import Screen, screen_of
-from guardbit.study.goals.trials import Judge, Trial, decibels, goal_frames
+from guardbit.study.goals.trials import Judge, Trial, goal_frames
 
 COARSE, FINE = 6, 40
 """Values over the pixel range that screen all choices, and those that are left to analyse."""
@@ -94,7 +94,7 @@ def _said(missed: Shortfall) -> dict[str, str]:
     figures = (missed.reached, missed.wanted)
     match missed.goal:
         case "snr":
-            reached, wanted = (f"{decibels(each)} dB" for each in figures)
+            reached, wanted = (f"{lower_decibels(each)} dB" for each in figures)
             return {"what": "signal-to-noise ratio", "reached": reached, "wanted": wanted}
         case "error":
             reached, wanted = (f"{upper(each)} LSB" for each in figures)

@@ -9,13 +9,12 @@ from pathlib import Path
 from guardbit.files.images import read_image
 from guardbit.files.paths import safe_path
 from guardbit.fit.resolve import resolve
-from guardbit.model.decimals import lower
 from guardbit.model.filter import Filter
 from guardbit.model.finding import Place, SpecError, finding
 from guardbit.model.goal import Figures, Shortfall, Words
 from guardbit.model.routine import Codes
 from guardbit.model.sizing import ErrorBound, Sizing
-from guardbit.model.spec import GoalTable, Spec
+from guardbit.model.spec import GoalTable, InputTable, Spec
 from guardbit.sizing.analyse import analyse, unmet
 from guardbit.sizing.frequency import frequency
 from guardbit.study.goals.choices import with_words
@@ -34,8 +33,8 @@ def greatest_error(error: ErrorBound) -> Fraction:
 def goal_frames(spec: Spec) -> tuple[Codes, ...]:
     """Return the images that a goal names, each (rows, columns, channels).
 
-    Raises SpecError for one that is no image, has other channels than the spec or codes
-    outside the input format; MachineError for one that cannot be read.
+    Raises SpecError for one that is no image or no legal frame of the spec: by its channels, size
+    or codes; MachineError for one that cannot be read.
     """
     if spec.goal is None:
         return ()
@@ -46,20 +45,31 @@ def goal_frames(spec: Spec) -> tuple[Codes, ...]:
 def _frame(spec: Spec, folder: Path, path: str) -> Codes:
     codes = read_image(safe_path(folder, path))
     place = Place(spec.path, spec.lines.get("goal.frames"), "goal.frames")
-    bits, channels = spec.input.bits, spec.image.channels
-    low, high = (
-        (-(1 << bits - 1), (1 << bits - 1) - 1) if spec.input.signed else (0, (1 << bits) - 1)
-    )
+    channels, sides = spec.image.channels, (spec.image.height, spec.image.width)
     if codes.shape[2] != channels:
         raise SpecError(
             finding("goal-frame-channels", place, path=path, got=codes.shape[2], wanted=channels)
         )
-    if codes.min() < low or codes.max() > high:
-        least, most = int(codes.min()), int(codes.max())
+    height, width = size = codes.shape[:2]
+    if any(not low <= n <= high for n, (low, high) in zip(size, sides, strict=True)):
+        raise SpecError(finding("goal-frame-size", place, path=path, height=height, width=width))
+    low, high = _legal_codes(spec.input)
+    least, most = int(codes.min()), int(codes.max())
+    if least < low or most > high:
         raise SpecError(
-            finding("goal-frame-codes", place, path=path, least=least, most=most, bits=bits)
+            finding(
+                "goal-frame-codes", place, path=path, least=least, most=most, low=low, high=high
+            )
         )
     return codes
+
+
+def _legal_codes(table: InputTable) -> tuple[int, int]:
+    """Return the range: of other codes the contract says nothing, nor would their error count."""
+    if table.range is not None:
+        return table.range
+    count = 1 << table.bits
+    return (-(count >> 1), (count >> 1) - 1) if table.signed else (0, count - 1)
 
 
 @dataclass(frozen=True)
@@ -157,14 +167,6 @@ def _missed_snr(decibels: Fraction, ratio: Fraction | None) -> list[Shortfall]:
     """Return the shortfall of a power ratio; none where there is no error at all."""
     wanted = power_ratio(decibels)
     return [] if ratio is None or ratio >= wanted else [Shortfall("snr", ratio, wanted)]
-
-
-def decibels(ratio: Fraction) -> str:
-    """Return a power ratio in dB, to two digits, never more than it is."""
-    if ratio == 0:
-        return "-infinite"
-    exact = _DIGITS.divide(Decimal(ratio.numerator), Decimal(ratio.denominator))
-    return lower(Fraction(10 * exact.log10(_DIGITS)), 2)
 
 
 def power_ratio(decibels: Fraction) -> Fraction:
