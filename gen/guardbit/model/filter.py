@@ -49,6 +49,26 @@ class Term:
 
 
 @dataclass(frozen=True)
+class TapSet:
+    """The coefficients that may be loaded at run time; the kernel's own are the nominal ones.
+
+    `cells` gives for each term of the kernel, in its order, the tap's place in raster order of
+    the box, which has `count` cells; every other cell must be loaded with zero. A legal loading
+    has each tap in least..greatest of its term, `sum` as the sum of all and at most
+    `magnitudes` as that of their magnitudes (None: any), and is one of `kernels`, written in the
+    terms' order, if there are any.
+    """
+
+    count: int
+    cells: tuple[int, ...]
+    least: tuple[int, ...]
+    greatest: tuple[int, ...]
+    sum: int | None
+    magnitudes: int | None
+    kernels: tuple[tuple[int, ...], ...]
+
+
+@dataclass(frozen=True)
 class Kernel:
     """The fitted taps of one pass, in the contract's order of accumulation.
 
@@ -59,7 +79,9 @@ class Kernel:
     With `scale` binary, integer stands for ideal * 2**frac and `divisor` is 1. With exact,
     integer / divisor equals ideal, and `frac` is 0. `bits` and `signed` are the coefficient
     register's. `rule` is how the integers were found (None: pinned in the spec), and
-    `residual` is sum(integer) - 2**frac * divisor * sum(ideal).
+    `residual` is sum(integer) - 2**frac * divisor * sum(ideal). With
+    `registers` the coefficients are loaded at run time: the terms then are all cells of the box
+    that can be other than zero, with their nominal integers.
     """
 
     terms: tuple[Term, ...]
@@ -70,6 +92,7 @@ class Kernel:
     signed: bool
     rule: FitRule | None
     residual: Fraction
+    registers: TapSet | None = None
 
 
 @dataclass(frozen=True)
