@@ -14,10 +14,11 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from guardbit.emit import expressions as c
 from guardbit.emit.emission import emit
 from guardbit.fit.resolve import resolve
 from guardbit.model.enums import Container, Outside
-from guardbit.model.filter import Filter
+from guardbit.model.filter import Filter, loaded, raster, registers_of
 from guardbit.model.plan import Cell, Plan
 from guardbit.model.routine import Emission, Status
 from guardbit.model.sizing import Sizing
@@ -25,6 +26,7 @@ from guardbit.plan.direct import direct
 from guardbit.reference.run import rejects, respond
 from guardbit.sizing.analyse import analyse
 
+from . import registers
 from .table import cases
 
 Codes = NDArray[np.int64]
@@ -48,28 +50,40 @@ SIZES = ((1, 1), (1, 9), (9, 1), (2, 2), (3, 5), (7, 5), (12, 14), (45, 48))
 
 @dataclass(frozen=True)
 class Emitted:
-    """One case of the table, all the way to its files."""
+    """One case of the table, all the way to its files; `taps` are what it is loaded with."""
 
     number: int
     sizing: Sizing
     plan: Plan
     emission: Emission
+    taps: tuple[int, ...] | None = None
 
     @property
     def filter(self) -> Filter:
-        return self.sizing.filter
+        f = self.sizing.filter
+        return f if self.taps is None else loaded(f, self.taps)
 
 
 @cache
 def emitted() -> tuple[Emitted, ...]:
-    """Every case of the table."""
-    return tuple(_emit(number, name) for number, name in enumerate(cases()))
+    """Every case of the table, then those with coefficients to load, once for each loading."""
+    made = [_emit(number, name) for number, name in enumerate(cases())]
+    for name in registers.cases():
+        made += _loaded(len(made), registers.sized(name))
+    return tuple(made)
 
 
 def _emit(number: int, name: str) -> Emitted:
     sizing = analyse(resolve(cases()[name]))
     plan = direct(sizing)
     return Emitted(number, sizing, plan, emit(sizing, plan, ()))
+
+
+def _loaded(first: int, sizing: Sizing) -> Iterator[Emitted]:
+    plan = direct(sizing)
+    emission = emit(sizing, plan, ())
+    for number, taps in enumerate(registers.loads(sizing.filter), first):
+        yield Emitted(number, sizing, plan, emission, taps)
 
 
 def write(folder: Path, made: Sequence[Emitted]) -> None:
@@ -97,6 +111,7 @@ TAILS_PER_FILTER = 2
 def unit(made: Sequence[Emitted]) -> str:
     """C that includes all filters and calls them, and their requantisers, by number."""
     names = [(each.number, each.filter.name) for each in made]
+    calls = [(each.number, each.filter.name, _taps(each)) for each in made]
     tails = [
         (TAILS_PER_FILTER * each.number + index, f"{probe.function}(({_type(step.value.work)})acc)")
         for each in made
@@ -104,41 +119,58 @@ def unit(made: Sequence[Emitted]) -> str:
             zip(each.plan.steps, each.emission.probes, strict=True)
         )
     ]
-    rest = "width, height, {}scratch, scratch_len);"
+    rest = "width, height, {}$scratch, scratch_len);"
     return "\n".join(
         [
-            *(f'#include "{name}.c"' for _, name in names),
+            *dict.fromkeys(f'#include "{name}.c"' for _, name in names),
+            *(_constants(each) for each in made),
             *(f"{head};" for head in (_BAND, _FRAME, _SIZE, _TAIL)),
             _switch(
                 _BAND,
-                names,
+                calls,
                 "return @_band(src, src_stride, dst, dst_stride, " + rest.format("from, to, "),
                 "return -1;",
             ),
             _switch(
                 _FRAME,
-                names,
+                calls,
                 "return @_frame(src, src_stride, dst, dst_stride, " + rest.format(""),
                 "return -1;",
             ),
             _switch(
                 _SIZE,
-                names,
+                calls,
                 "@_output_size(width, height, out_width, out_height); break;",
                 "break;",
             ),
-            _switch(_TAIL, tails, "return (int64_t)@;", "return 0;"),
+            _switch(_TAIL, [(*tail, "") for tail in tails], "return (int64_t)@;", "return 0;"),
             "",
         ]
     )
+
+
+def _taps(each: Emitted) -> str:
+    return "" if each.taps is None else f"taps_{each.number}, "
+
+
+def _constants(each: Emitted) -> str:
+    """The taps that a case is loaded with."""
+    s = registers_of(each.filter)
+    if each.taps is None or s is None or each.plan.taps is None:
+        return ""
+    numbers = ", ".join(map(c.number, raster(s, each.taps)))
+    return f"static const {_type(each.plan.taps)} taps_{each.number}[] = {{ {numbers} }};"
 
 
 def _type(cell: Cell) -> str:
     return f"{'' if cell.signed else 'u'}int{cell.bits}_t"
 
 
-def _switch(head: str, cases: Sequence[tuple[int, str]], case: str, other: str) -> str:
-    lines = [f"    case {number}: {case.replace('@', name)}" for number, name in cases]
+def _switch(head: str, cases: Sequence[tuple[int, str, str]], case: str, other: str) -> str:
+    lines = [
+        f"    case {number}: {case.replace('@', name).replace('$', taps)}"
+        for number, name, taps in cases
+    ]
     lines = [*lines, f"    default: {other}", "    }", "}"]
     return "\n".join([head, "{", "    switch (which) {", *lines])
 

@@ -17,12 +17,13 @@ from typing import IO, Any
 
 from cffi import FFI
 
-_HEAD = struct.Struct("=9Q")
+_HEAD = struct.Struct("=10Q")
 _RESULT = struct.Struct("=4Q")
 _FILLERS = (b"\xa5", b"\x5a")
 _WROTE_OUTSIDE = 1
 _CHANGED_SOURCE = 2
 _ARGUMENTS = 16
+_KINDS = ("src", "dst", "scratch", "taps")
 _PAGE = mmap.PAGESIZE
 _MARGIN = 256
 _BLOCK = 1 << 16
@@ -117,7 +118,7 @@ class Routine:
 
 
 class Child:
-    """One process's state: the library, its routines, three arenas."""
+    """One process's state: the library, its routines, an arena for each kind of pointer."""
 
     def __init__(self, job: dict[str, Any]) -> None:
         ffi = FFI()
@@ -127,7 +128,7 @@ class Child:
         self.library: Any = ffi.dlopen(job["library"])
         self._routines = [Routine(ffi, self.library, data) for data in job["routines"]]
         self._seconds = float(job["seconds"])
-        self._arenas = {kind: Arena(ffi, libc) for kind in ("src", "dst", "scratch")}
+        self._arenas = {kind: Arena(ffi, libc) for kind in _KINDS}
 
     def run_job(self, source: IO[bytes], results: IO[bytes]) -> None:
         """Run every case of a job file."""
@@ -136,7 +137,8 @@ class Child:
             head = _HEAD.unpack(source.read(_HEAD.size))
             size = 8 * (1 + _ARGUMENTS)
             calls = [struct.unpack("=17q", source.read(size)) for _ in range(head[1])]
-            results.write(self._case(index, head, calls, source.read(head[2] * head[3])))
+            given = source.read(head[2] * head[3]), source.read(head[9])
+            results.write(self._case(index, head, calls, given))
             results.flush()
 
     def run_probe(self, name: str, source: IO[bytes], results: IO[bytes]) -> None:
@@ -153,11 +155,15 @@ class Child:
             results.flush()
 
     def _case(
-        self, index: int, head: tuple[int, ...], calls: list[tuple[int, ...]], frame: bytes
+        self,
+        index: int,
+        head: tuple[int, ...],
+        calls: list[tuple[int, ...]],
+        given: tuple[bytes, bytes],
     ) -> bytes:
         routine = self._routines[head[0]]
         self._allow(self._seconds)
-        runs = [self._run(run, routine, head, calls, frame) for run in (0, 1)]
+        runs = [self._run(run, routine, head, calls, given) for run in (0, 1)]
         size = routine.output_size(head[7], head[8])
         self._allow(0)
         harm = runs[0][0] | runs[1][0]
@@ -169,16 +175,18 @@ class Child:
         routine: Routine,
         head: tuple[int, ...],
         calls: list[tuple[int, ...]],
-        frame: bytes,
+        given: tuple[bytes, bytes],
     ) -> tuple[int, bytes]:
         filler = _FILLERS[run]
-        src = _lay(frame, head, filler)
-        lengths = {"src": len(src), "dst": head[5], "scratch": head[6]}
+        src, taps = _lay(given[0], head, filler), given[1]
+        lengths = {"src": len(src), "dst": head[5], "scratch": head[6], "taps": len(taps)}
         bases = {k: self._arenas[k].place(n, filler, run == 0) for k, n in lengths.items()}
         self._arenas["src"].store(src)
+        self._arenas["taps"].store(taps)
         statuses = [routine.call(words, bases) for words in calls]
         harm = 0 if all(a.intact() for a in self._arenas.values()) else _WROTE_OUTSIDE
-        harm |= _CHANGED_SOURCE if self._arenas["src"].content() != src else 0
+        kept = self._arenas["src"].content() == src and self._arenas["taps"].content() == taps
+        harm |= 0 if kept else _CHANGED_SOURCE
         packed = struct.pack(f"={len(statuses)}q", *statuses)
         return harm, packed + self._arenas["dst"].content()
 

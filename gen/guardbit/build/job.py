@@ -1,8 +1,8 @@
 """The binary job file that every child process reads.
 
 Numbers are native 64-bit words. A job: the count of cases; per case a head (HEAD), per call of
-the C function its entry and MOST_ARGUMENTS arguments, then the frame's rows without gaps. A
-pointer argument is an offset in bytes from its buffer, or -1 for a null pointer.
+the C function its entry and MOST_ARGUMENTS arguments, then the frame's rows without gaps, then
+the taps. A pointer argument is an offset in bytes from its buffer, or -1 for a null pointer.
 """
 
 import struct
@@ -16,7 +16,7 @@ from guardbit.model.enums import Container
 from guardbit.model.routine import Call, Entry, Role, Routine
 
 MOST_ARGUMENTS = 16
-HEAD = struct.Struct("=9Q")
+HEAD = struct.Struct("=10Q")
 
 DTYPES: dict[Container, np.dtype[Any]] = {
     Container.U8: np.dtype(np.uint8),
@@ -69,6 +69,7 @@ def _case(index: int, routine: Routine, call: Call) -> bytes:
     kind = DTYPES[routine.source]
     faults = dict(call.faults)
     calls = _calls(routine, call)
+    taps = _taps(routine, call)
     head = HEAD.pack(
         index,
         len(calls),
@@ -79,9 +80,26 @@ def _case(index: int, routine: Routine, call: Call) -> bytes:
         made.scratch_bytes,
         faults.get(Role.WIDTH, width) or 0,
         faults.get(Role.HEIGHT, height) or 0,
+        len(taps),
     )
     parts = [_arguments(routine, call, made, one) for one in calls]
-    return head + b"".join(parts) + call.frame.astype(kind).tobytes()
+    return head + b"".join(parts) + call.frame.astype(kind).tobytes() + taps
+
+
+def taps_given(routine: Routine, call: Call) -> tuple[int, ...]:
+    """Return the coefficients that a call passes; none if the routine takes none."""
+    if routine.taps is None:
+        return ()
+    return routine.taps.nominal if call.taps is None else call.taps
+
+
+def _taps(routine: Routine, call: Call) -> bytes:
+    """Return the coefficients in their C type."""
+    if routine.taps is None:
+        return b""
+    bits, signed = routine.taps.word
+    kind = np.dtype(f"{'i' if signed else 'u'}{bits // 8}")
+    return np.array(taps_given(routine, call), np.int64).astype(kind).tobytes()
 
 
 def _calls(routine: Routine, call: Call) -> list[_One]:
@@ -107,6 +125,7 @@ def _arguments(routine: Routine, call: Call, made: Layout, one: _One) -> bytes:
         Role.HEIGHT: height,
         Role.FROM: band[0],
         Role.TO: band[1],
+        Role.TAPS: 0,
         Role.SCRATCH: 0,
         Role.SCRATCH_LEN: made.scratch_len,
         **dict(call.faults),

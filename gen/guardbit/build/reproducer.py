@@ -4,7 +4,7 @@ import re
 from collections.abc import Mapping
 from pathlib import Path
 
-from guardbit.build.job import DTYPES, layout
+from guardbit.build.job import DTYPES, layout, taps_given
 from guardbit.build.texts import prototype
 from guardbit.files.npy import npy_bytes
 from guardbit.files.writing import write_atomic
@@ -43,6 +43,7 @@ def replay_text(routine: Routine, frame: str, call: Call, facts: Mapping[str, st
     }
     values = {role: str(named[role]) for role in entry.roles if role in named}
     faults = {role: "NULL" if value is None else str(value) for role, value in call.faults}
+    taps = taps_given(routine, call)
     lines = [
         f"{frame}: the source, {height} rows of {width} pixels of {channels} channel(s),",
         "in the routine's own element type. Copy row r to src + r * src_stride.",
@@ -50,6 +51,7 @@ def replay_text(routine: Routine, frame: str, call: Call, facts: Mapping[str, st
         f"Call: {prototype(routine, entry)}",
         *(f"  {role} = {value}" for role, value in {**values, **faults}.items()),
         *(f"  rows {a} to {b} (from, to), dst at row {a}" for a, b in call.bands),
+        *([f"  taps = {', '.join(map(str, taps))}"] if taps and Role.TAPS not in faults else []),
         f"dst holds {call.shape[0]} rows of {call.shape[1]} pixels.",
         "",
         "What came of it:",

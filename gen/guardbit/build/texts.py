@@ -16,7 +16,7 @@ _TYPES = {
     Container.U32: "uint32_t",
     Container.I32: "int32_t",
 }
-_POINTERS = {Role.SRC: "src", Role.DST: "dst", Role.SCRATCH: "scratch"}
+_POINTERS = {Role.SRC: "src", Role.DST: "dst", Role.SCRATCH: "scratch", Role.TAPS: "taps"}
 
 
 @lru_cache(maxsize=1)
@@ -38,10 +38,18 @@ def argument_type(routine: Routine, role: Role) -> str:
         case Role.DST:
             return f"{_TYPES[routine.destination]} *"
         case Role.SCRATCH:
-            bits, signed = routine.word or (8, False)
-            return f"{'' if signed else 'u'}int{bits}_t *"
+            return f"{_integer(routine.word or (8, False))} *"
+        case Role.TAPS:
+            word = routine.taps.word if routine.taps else (8, True)
+            return f"const {_integer(word)} *"
         case _:
             return "size_t"
+
+
+def _integer(word: tuple[int, bool]) -> str:
+    """Return the C type of (bits, signed)."""
+    bits, signed = word
+    return f"{'' if signed else 'u'}int{bits}_t"
 
 
 def prototype(routine: Routine, entry: Entry) -> str:

@@ -14,12 +14,13 @@ from guardbit.emit.driver import DriverText, driver_text
 from guardbit.emit.geometry import GeometryText, geometry_text
 from guardbit.emit.layout import comment, fold, harmless, initialiser, prose
 from guardbit.emit.loading import IndexText, LoadText, index_text, load_text
+from guardbit.emit.registers import TapsText, taps_text
 from guardbit.emit.selfcheck import SelfcheckText, selfcheck_text
 from guardbit.emit.steps import StepText, step_text, tail_function
 from guardbit.model.enums import Preload
-from guardbit.model.filter import Filter
+from guardbit.model.filter import Filter, raster, registers_of
 from guardbit.model.plan import Plan, Step
-from guardbit.model.routine import Emission, Entry, Probe, Role, Routine, SourceFile
+from guardbit.model.routine import Emission, Entry, Probe, Role, Routine, SourceFile, Taps
 from guardbit.model.sizing import Sizing
 from guardbit.model.vectors import Vector
 
@@ -33,7 +34,10 @@ _FRAME = (
     Role.SCRATCH,
     Role.SCRATCH_LEN,
 )
-_BAND = (*_FRAME[:6], Role.FROM, Role.TO, *_FRAME[6:])
+_ROWS = (Role.FROM, Role.TO)
+_PLACE = 6
+"""Where in `_FRAME` the rows of a band go, and the taps behind them."""
+
 _TEMPLATES = ("{}.h", "{}.c", "{}_selfcheck.c")
 
 
@@ -64,6 +68,7 @@ class FilterText:
     steps: tuple[StepText, ...]
     driver: DriverText
     check: SelfcheckText
+    taps: TapsText | None
 
 
 def emit(sizing: Sizing, plan: Plan, vectors: Sequence[Vector]) -> Emission:
@@ -106,17 +111,19 @@ def filter_text(sizing: Sizing, plan: Plan, vectors: Sequence[Vector]) -> Filter
         steps=tuple(step_text(sizing, plan, step) for step in plan.steps),
         driver=driver_text(f, plan, g),
         check=selfcheck_text(vectors),
+        taps=taps_text(f, plan),
     )
 
 
 def _routine(
     f: Filter, plan: Plan, geometry: GeometryText, sources: tuple[SourceFile, ...]
 ) -> Routine:
+    taps = _taps(f, plan)
     return Routine(
         name=f.name,
         sources=sources,
-        frame=Entry(f"{f.name}_frame", _FRAME),
-        band=Entry(f"{f.name}_band", _BAND),
+        frame=Entry(f"{f.name}_frame", _roles(taps, band=False)),
+        band=Entry(f"{f.name}_band", _roles(taps, band=True)),
         output_size=f"{f.name}_output_size",
         source=f.input.container,
         destination=f.output.container,
@@ -126,7 +133,22 @@ def _routine(
         scratch_fixed=geometry.units * geometry.columns.extra,
         widths=f.geometry.columns.sizes,
         heights=f.geometry.rows.sizes,
+        taps=taps,
     )
+
+
+def _roles(taps: Taps | None, *, band: bool) -> tuple[Role, ...]:
+    """Return the arguments of an entry in order."""
+    more = (*(_ROWS if band else ()), *((Role.TAPS,) if taps else ()))
+    return (*_FRAME[:_PLACE], *more, *_FRAME[_PLACE:])
+
+
+def _taps(f: Filter, plan: Plan) -> Taps | None:
+    registers = registers_of(f)
+    if registers is None or plan.taps is None:
+        return None
+    nominal = raster(registers, [t.integer for t in f.passes[0].kernel.terms])
+    return Taps((plan.taps.bits, plan.taps.signed), nominal)
 
 
 def _probe(f: Filter, plan: Plan, step: Step) -> Probe:

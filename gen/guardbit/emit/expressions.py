@@ -87,6 +87,20 @@ def product(term: Product, read: str, cell: Cell, word: Cell) -> str:
     return f"{number(term.coefficient)} * {value}"
 
 
+def loaded_product(tap: str, read: str, cells: tuple[Cell, Cell, Cell]) -> str:
+    """Return tap * value; `cells` are the product's, the tap's and that of the rows.
+
+    An operand is cast unless C's own conversions give it the product's type on any machine.
+    A tap that is narrower than the product, or as wide with its sign, follows the value.
+    """
+    cell, held, word = cells
+    if cell.bits == 16:
+        return f"{tap} * {read}"
+    value = read if cell == word else f"({cell_type(cell)}){read}"
+    follows = held == cell or (held.bits < cell.bits and (cell.signed or not held.signed))
+    return f"{tap if follows else f'({cell_type(cell)}){tap}'} * {value}"
+
+
 def total(products: list[str], width: int) -> list[str]:
     """Return the sum of the products in lines of at most `width` columns, operators in front."""
     lines = [products[0]]

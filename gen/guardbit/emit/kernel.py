@@ -10,21 +10,29 @@ _MOST_ROWS = 31
 
 
 def kernel_lines(kernel: Kernel, geometry: Geometry) -> tuple[str, ...]:
-    """Return a sentence and the matrix of coefficients; empty if it is too large to read."""
-    taps = {(t.dy, t.dx): t.integer for t in kernel.terms if t.integer}
+    """Return a sentence and the matrix of coefficients; empty if it is too large to read.
+
+    Coefficients that are given at run time show as their places in the array.
+    """
+    taps = {(t.dy, t.dx): str(t.integer) for t in kernel.terms if t.integer}
+    what, empty = "Coefficients of the pixels", "0"
+    if kernel.registers is not None:
+        offsets = [(t.dy, t.dx) for t in kernel.terms]
+        taps = dict(zip(offsets, map(str, kernel.registers.cells), strict=True))
+        what, empty = "Which of the taps multiplies each pixel", "."
     if not taps:
         return ()
     rows = _lattice([dy for dy, _ in taps], geometry.rows)
     columns = _lattice([dx for _, dx in taps], geometry.columns)
     if len(rows) > _MOST_ROWS or len(columns) > _MOST_COLUMNS:
         return ()
-    matrix = [[str(taps.get((dy, dx), 0)) for dx in columns] for dy in rows]
+    matrix = [[taps.get((dy, dx), empty) for dx in columns] for dy in rows]
     width = max(len(text) for row in matrix for text in row)
     lines = ["   ".join(text.rjust(width) for text in row) for row in matrix]
     if max(map(len, lines)) > WIDTH - 8:
         return ()
     where = f"{_along('row', rows)}, {_along('column', columns)}"
-    return (f"Coefficients of the pixels about the output, {where}:", *lines)
+    return (f"{what} about the output, {where}:", *lines)
 
 
 def _lattice(offsets: Sequence[int], axis: Axis) -> range:

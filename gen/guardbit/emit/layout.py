@@ -58,7 +58,7 @@ def prose(lines: Sequence[str]) -> str:
     return "\n".join(f" * {line}".rstrip() for line in wrapped)
 
 
-def initialiser(values: Sequence[int]) -> str:
+def initialiser(values: Sequence[int], indent: int = 4) -> str:
     """Return an initialiser's numbers, as many on a line as fit."""
-    text = ", ".join(number(int(value)) for value in values)
-    return textwrap.fill(text, WIDTH, initial_indent="    ", subsequent_indent="    ")
+    text, left = ", ".join(number(int(value)) for value in values), " " * indent
+    return textwrap.fill(text, WIDTH, initial_indent=left, subsequent_indent=left)

@@ -14,7 +14,7 @@ from guardbit.emit.tails import (
     tail_text,
 )
 from guardbit.model.filter import Filter
-from guardbit.model.plan import Field, Group, Plan, Product, SaturatingSum, Step, Sum
+from guardbit.model.plan import Cell, Field, Group, Plan, Product, SaturatingSum, Step, Sum
 from guardbit.model.sizing import Sizing
 
 _WIDTH = 74
@@ -109,7 +109,7 @@ def step_text(sizing: Sizing, plan: Plan, step: Step) -> StepText:
         type=_type(x),
         accumulator=c.cell_type(x.sum.cell),
         start=c.number(x.sum.start),
-        ranges=words.ranges(sizing.registers[step.stage]),
+        ranges=words.ranges(sizing.registers[step.stage], stage),
         statements=tuple(_statement(x, group) for group in x.sum.groups),
         saturates=saturation_text(f"{prefix}_add", x.sum)
         if isinstance(x.sum, SaturatingSum)
@@ -177,6 +177,9 @@ def _statement(x: _Context, group: Group) -> StatementText:
     if isinstance(x.sum, SaturatingSum):
         return StatementText("add", tuple(_products(x, group)))
     (first, *rest) = group.terms
+    if x.sum.modular and first.register is not None:
+        value = f"(uint64_t){_tap(x, first.register)} * (uint64_t){_read(x, first)}"
+        return StatementText("+=", (value,))
     if x.sum.modular:
         value = f"UINT64_C({abs(first.coefficient)}) * (uint64_t){_read(x, first)}"
         return StatementText("-=" if first.coefficient < 0 else "+=", (value,))
@@ -187,4 +190,18 @@ def _statement(x: _Context, group: Group) -> StatementText:
 
 
 def _products(x: _Context, group: Group) -> list[str]:
-    return [c.product(term, _read(x, term), group.cell, x.plan.word) for term in group.terms]
+    return [_product(x, term, group.cell) for term in group.terms]
+
+
+def _product(x: _Context, term: Product, cell: Cell) -> str:
+    if term.register is None or x.plan.taps is None:
+        return c.product(term, _read(x, term), cell, x.plan.word)
+    cells = (cell, x.plan.taps, x.plan.word)
+    return c.loaded_product(_tap(x, term.register), _read(x, term), cells)
+
+
+def _tap(x: _Context, number: int) -> str:
+    """Return the C lvalue of a coefficient that is given at run time."""
+    registers = x.filter.passes[x.step.stage].kernel.registers
+    assert registers is not None
+    return f"taps[{registers.cells[number]}]"

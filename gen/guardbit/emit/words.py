@@ -3,6 +3,7 @@
 from fractions import Fraction
 from math import ceil, floor
 
+from guardbit.emit.registers import tap_words
 from guardbit.model.enums import (
     BorderMode,
     Extent,
@@ -13,7 +14,14 @@ from guardbit.model.enums import (
     Preload,
     Rounding,
 )
-from guardbit.model.filter import Axis, Filter, Pass, PixelFormat, Requantiser
+from guardbit.model.filter import (
+    Axis,
+    Filter,
+    Pass,
+    PixelFormat,
+    Requantiser,
+    registers_of,
+)
 from guardbit.model.plan import Tail, Thresholds
 from guardbit.model.sizing import ErrorBound, RegisterSizing, Sizing
 
@@ -95,7 +103,7 @@ def step_words(name: str, *, vertical: bool, widens: bool) -> str:
     return f"{purpose} Operands are widened first: int may have 16 bits." if widens else purpose
 
 
-def ranges(register: RegisterSizing) -> str:
+def ranges(register: RegisterSizing, stage: Pass) -> str:
     """Return what an accumulator reaches before wrapping or clamping, for legal codes."""
     final, partial = register.final, register.partial
     text = f"{final.low} to {final.high} at the end"
@@ -103,7 +111,7 @@ def ranges(register: RegisterSizing) -> str:
         text += f", {partial.low} to {partial.high} on the way"
     if register.held != final:
         text += f"; the register holds {register.held.low} to {register.held.high} of it"
-    return f"{text}, for legal codes"
+    return f"{text}, for legal codes" + (" and taps" if stage.kernel.registers else "")
 
 
 def register_words(register: RegisterSizing, stage: Pass) -> list[str]:
@@ -119,7 +127,7 @@ def register_words(register: RegisterSizing, stage: Pass) -> list[str]:
         does = "cannot overflow, so that no sum wraps or saturates"
     return [
         f"{register.bits} bits, {kind}, of which {register.bits_forbid} are needed; {does};",
-        ranges(register),
+        ranges(register, stage),
     ]
 
 
@@ -173,19 +181,43 @@ def contract(sizing: Sizing) -> list[str]:
         *_entry("source", *_source(f)),
         *_entry("border", _border(f)),
     ]
+    lines += _coefficients(f)
     for index, (register, stage) in enumerate(zip(sizing.registers, f.passes, strict=True)):
         number = f" {index + 1}" if len(f.passes) > 1 else ""
         lines += _entry(f"accumulator{number}", *register_words(register, stage))
         lines += _entry(f"requantiser{number}", tail_words(stage))
     lines += _entry("output", f"{format_words(f.output)};", _extent(f))
-    lines += _entry("error", *_error(sizing.error))
+    lines += _entry("error", *_error(f, sizing.error))
     return [
         *lines,
         "",
-        "These bounds hold only for codes inside the declared range of the source. They are",
-        "engineering evidence, not the work of a qualified tool: verifying the product stays with",
-        "the engineer who is responsible for it.",
+        *_closing(f),
     ]
+
+
+def _closing(f: Filter) -> tuple[str, ...]:
+    """Return for what the bounds hold, and what they are worth."""
+    if registers_of(f) is not None:
+        return (
+            "These bounds hold only for codes inside the declared range of the source, and all but",
+            "that of the error for all legal taps. They are engineering evidence, not the work of",
+            "a qualified tool: verifying the product stays with the engineer who is responsible",
+            "for it.",
+        )
+    return _FIXED
+
+
+_FIXED = (
+    "These bounds hold only for codes inside the declared range of the source. They are",
+    "engineering evidence, not the work of a qualified tool: verifying the product stays with",
+    "the engineer who is responsible for it.",
+)
+
+
+def _coefficients(f: Filter) -> list[str]:
+    """Return what is known of coefficients that are given at run time, in one entry."""
+    registers = registers_of(f)
+    return [] if registers is None else _entry("coefficients", *tap_words(f.name, registers))
 
 
 _COLUMN = 16
@@ -206,9 +238,11 @@ def _border(f: Filter) -> str:
     return f"outside the image: {MODES[f.border.mode]}" + (", each site of a mosaic alone" * site)
 
 
-def _error(error: ErrorBound) -> list[str]:
+def _error(f: Filter, error: ErrorBound) -> list[str]:
     low, high = outward(error.low, up=False), outward(error.high, up=True)
     line = f"{low} to {high} LSB of the output code against the ideal filter"
+    if registers_of(f) is not None:
+        line += ", with the nominal taps"
     if not error.assumes_no_wrap:
         return [line]
     return [f"{line},", "for sources with which no sum leaves its register and no output wraps"]

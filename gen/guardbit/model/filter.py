@@ -4,7 +4,8 @@ Offsets `(dy, dx)` say where a tap reads: the pixel at the output position plus 
 For convolution that is minus the tap's displacement, for correlation plus its scaled index.
 """
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from guardbit.model.enums import (
@@ -93,6 +94,11 @@ class Kernel:
     rule: FitRule | None
     residual: Fraction
     registers: TapSet | None = None
+
+    @property
+    def live(self) -> tuple[Term, ...]:
+        """Return the terms that may add something to a sum: all that registers hold."""
+        return tuple(t for t in self.terms if t.integer or self.registers is not None)
 
 
 @dataclass(frozen=True)
@@ -191,3 +197,30 @@ class Filter:
     def output(self) -> PixelFormat:
         """Return the format of the result."""
         return self.passes[-1].requantiser.to
+
+
+def registers_of(f: Filter) -> TapSet | None:
+    """Return the set of coefficients that may be loaded; None: they are fixed."""
+    return f.passes[0].kernel.registers
+
+
+def loaded(f: Filter, taps: Sequence[int]) -> Filter:
+    """Return the filter with other integers in its coefficient registers.
+
+    `taps` are in the order of the kernel's terms. The ideal taps stay those of the nominal
+    kernel. The registers are kept: what they may hold decides which rows a frame is judged by.
+    """
+    (only,) = f.passes
+    kernel = only.kernel
+    terms = tuple(replace(t, integer=k) for t, k in zip(kernel.terms, taps, strict=True))
+    moved = sum(taps) - sum(t.integer for t in kernel.terms)
+    changed = replace(kernel, terms=terms, residual=kernel.residual + moved)
+    return replace(f, passes=(replace(only, kernel=changed),))
+
+
+def raster(s: TapSet, taps: Sequence[int]) -> tuple[int, ...]:
+    """Return a loading, given in the order of the terms, as all cells of the box."""
+    cells = [0] * s.count
+    for cell, tap in zip(s.cells, taps, strict=True):
+        cells[cell] = tap
+    return tuple(cells)

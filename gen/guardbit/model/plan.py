@@ -59,8 +59,15 @@ class Read:
 
 @dataclass(frozen=True)
 class Product:
+    """A coefficient times a row value.
+
+    `register` is the number of the kernel's term whose coefficient is given at run time, from
+    0; `coefficient` is then only its nominal value.
+    """
+
     coefficient: int
     of: Read
+    register: int | None = None
 
 
 @dataclass(frozen=True)
@@ -206,7 +213,8 @@ class Plan:
 
     `top` and `left` are the row and column of the least offsets that any tap reads, `span` the
     number of rows and columns from there to the greatest: what a padded row has to cover.
-    `tap_rows` are the rows of that span, from 0, which some tap reads.
+    `tap_rows` are the rows of that span, from 0, which some tap reads. `taps` is the type of
+    the coefficients that are given at run time, if they are.
     """
 
     name: str
@@ -218,3 +226,4 @@ class Plan:
     load: Load
     rows: tuple[Rows, ...]
     steps: tuple[Step, ...]
+    taps: Cell | None = None

@@ -28,6 +28,7 @@ class Role(StrEnum):
     HEIGHT = "height"
     FROM = "from"
     TO = "to"
+    TAPS = "taps"
     SCRATCH = "scratch"
     SCRATCH_LEN = "scratch_len"
 
@@ -41,6 +42,7 @@ class Status(StrEnum):
     BAD_STRIDE = "BAD_STRIDE"
     BAD_SCRATCH = "BAD_SCRATCH"
     BAD_CODE = "BAD_CODE"
+    BAD_TAPS = "BAD_TAPS"
 
 
 @dataclass(frozen=True)
@@ -56,6 +58,17 @@ class Entry:
     function: str
     roles: tuple[Role, ...]
     status: bool = True
+
+
+@dataclass(frozen=True)
+class Taps:
+    """The coefficients that each call of a routine is given, in raster order of their box.
+
+    `word` is their C type (bits, signed); `nominal` is what is passed unless a call says else.
+    """
+
+    word: tuple[int, bool]
+    nominal: tuple[int, ...]
 
 
 @dataclass(frozen=True)
@@ -80,6 +93,7 @@ class Routine:
     scratch_fixed: int
     widths: tuple[int, int]
     heights: tuple[int, int]
+    taps: Taps | None = None
 
 
 @dataclass(frozen=True)
@@ -117,7 +131,8 @@ class Call:
     output buffer. `bands` are the output row ranges to ask for, in the order given; without
     them the whole frame is asked for by the frame entry.
     `src_gap`, `dst_gap`: elements of stride beyond a row. `faults` replaces arguments by
-    deliberately wrong ones (a role to the value passed; None is a null pointer).
+    deliberately wrong ones (a role to the value passed; None is a null pointer). `taps` are
+    the coefficients, in raster order of their box; None: the routine's nominal ones, if any.
     """
 
     frame: Codes
@@ -126,6 +141,7 @@ class Call:
     src_gap: int = 0
     dst_gap: int = 0
     faults: tuple[tuple[Role, int | None], ...] = ()
+    taps: tuple[int, ...] | None = None
 
 
 class Harm(StrEnum):

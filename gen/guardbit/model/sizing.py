@@ -27,7 +27,9 @@ class Witness:
     The frame is height x width pixels of code `fill`, except `pixels` = (row, column, code);
     every channel is alike. At output position `position` (row, column, in image coordinates)
     the register named reaches `value` after adding `after` taps (all taps: the final value).
-    It may also name a requantiser, and `value` then is the code that leaves it.
+    It may also name a requantiser, and `value` then is the code that leaves it. `taps` are
+    what coefficient registers hold meanwhile, in the order of the kernel's terms; None: the
+    filter's own coefficients.
     """
 
     register: str
@@ -40,6 +42,7 @@ class Witness:
     position: tuple[int, int]
     after: int
     value: int
+    taps: tuple[int, ...] | None = None
 
 
 @dataclass(frozen=True)

@@ -1,6 +1,5 @@
 """Whether a plan computes its filter: forms, order, limits, tails, loading and types."""
 
-from collections import Counter
 from collections.abc import Callable, Iterator
 
 from guardbit.arith.intervals import contains
@@ -45,8 +44,10 @@ def kernel_form(stage: Pass) -> Form:
     if register.overflow is Overflow.SATURATE and register.bits is not None:
         word = format_range(register.bits, register.signed)
         start = clamp(start, word.low, word.high)
-    taps = Counter({(t.dy, t.dx): t.integer for t in stage.kernel.terms if t.integer})
-    return Form(start, tuple(sorted(taps.items())))
+    terms = stage.kernel.terms
+    if stage.kernel.registers is not None:
+        return Form(start, (), tuple(sorted(((t.dy, t.dx), n) for n, t in enumerate(terms))))
+    return Form(start, tuple(sorted(((t.dy, t.dx), t.integer) for t in terms if t.integer)))
 
 
 def _chain_faults(plan: Plan, f: Filter) -> Iterator[str]:

@@ -11,7 +11,7 @@ from itertools import groupby
 from guardbit.arith.intervals import add, clamp_to, contains, hull, scale, shift, wrapped
 from guardbit.arith.words import clamp, container_range, container_word, format_range
 from guardbit.model.enums import BorderMode, Outside, Overflow
-from guardbit.model.filter import Filter, Pass
+from guardbit.model.filter import Filter, Pass, TapSet, registers_of
 from guardbit.model.plan import (
     Cell,
     Field,
@@ -37,6 +37,7 @@ from guardbit.plan.cells import (
 )
 from guardbit.plan.conformity import check
 from guardbit.plan.evaluate import accumulator, room, start_value
+from guardbit.plan.sums import coefficient_range, partial_sums, product_range
 from guardbit.plan.tail import tail
 
 OUTPUT = "output"
@@ -44,10 +45,11 @@ OUTPUT = "output"
 
 @dataclass(frozen=True)
 class _Source:
-    """The row buffer that a pass reads, and what its cells can hold."""
+    """The row buffer that a pass reads, what its cells can hold, and the pass's registers."""
 
     rows: str
     pixels: Interval
+    registers: TapSet | None = None
 
 
 def direct(sizing: Sizing) -> Plan:
@@ -102,6 +104,7 @@ def _plan(sizing: Sizing, clamped: Interval | None, codes: Interval) -> Plan:
         load=Load(rows[0].name, clamped, pedestal, constant, work_cell((codes, loaded))),
         rows=rows,
         steps=steps,
+        taps=tap_cell(f),
     )
     return check(plan, sizing)
 
@@ -114,7 +117,7 @@ def _offsets(f: Filter, axis: int) -> tuple[int, ...]:
     """
     reach = {0}
     for stage in f.passes:
-        own = {(t.dy, t.dx)[axis] for t in stage.kernel.terms if t.integer} or {0}
+        own = {(t.dy, t.dx)[axis] for t in stage.kernel.live} or {0}
         reach = {a + b for a in reach for b in own}
     return tuple(sorted(reach))
 
@@ -123,7 +126,7 @@ def _reach(f: Filter) -> tuple[int, int, tuple[int, int], tuple[int, ...]]:
     """Return (top, left, span, tap rows); where a pass is all zeros no pixel matters."""
     rows, columns = _offsets(f, 0), _offsets(f, 1)
     span = (rows[-1] - rows[0] + 1, columns[-1] - columns[0] + 1)
-    reads = all(any(t.integer for t in stage.kernel.terms) for stage in f.passes)
+    reads = all(stage.kernel.live for stage in f.passes)
     return rows[0], columns[0], span, tuple(row - rows[0] for row in rows if reads)
 
 
@@ -161,16 +164,28 @@ def _steps(
         scratch.append(stored)
     word = storage_cell(hull(scratch[:-1]))
     output = Cell(*container_word(f.output.container))
-    return tuple(_typed(step, word, output) for step in steps), word
+    # what does not promote to int everywhere is no operand of a 16-bit group
+    narrow = _promotes(word) and _promotes(tap_cell(f) or word)
+    return tuple(_typed(step, word, output, narrow) for step in steps), word
 
 
-def _typed(step: Step, word: Cell, output: Cell) -> Step:
-    """Return the step with the types that follow from those of scratch and output.
+def tap_cell(f: Filter) -> Cell | None:
+    """Return the type of the coefficients that are given at run time; None: they are fixed."""
+    registers = registers_of(f)
+    if registers is None:
+        return None
+    return storage_cell(Interval(min(0, *registers.least), max(0, *registers.greatest)))
 
-    Unsigned words of 16 bits and more do not promote to int everywhere: no 16-bit groups.
-    """
+
+def _promotes(cell: Cell) -> bool:
+    """Return whether C makes an int of it, even one of 16 bits (6.3.1.1p2)."""
+    return cell.bits < 16 or cell == INT16
+
+
+def _typed(step: Step, word: Cell, output: Cell, narrow: bool) -> Step:
+    """Return the step with the types that follow from those of scratch and output."""
     made = replace(step.value, cell=output if step.writes == OUTPUT else word)
-    if word.bits > 16 or word == Cell(16, False):
+    if not narrow:
         made = replace(made, of=_without_int(made.of))
     return replace(step, value=made)
 
@@ -189,9 +204,8 @@ def _value(source: _Source, stage: Pass, register: RegisterSizing) -> tuple[Valu
     """Return the accumulator's arithmetic and the interval of its final value."""
     word = format_range(register.bits, register.signed)
     start = start_value(stage)
-    terms = tuple(
-        Product(t.integer, Read(source.rows, t.dy, t.dx)) for t in stage.kernel.terms if t.integer
-    )
+    source = replace(source, registers=stage.kernel.registers)
+    terms = _products(source, stage)
     match stage.accumulator.overflow:
         case Overflow.SATURATE if not contains(word, register.partial):
             return _saturating(source, start, terms, word)
@@ -200,36 +214,53 @@ def _value(source: _Source, stage: Pass, register: RegisterSizing) -> tuple[Valu
     return _sum(source, start, terms)
 
 
-def _running(start: int, terms: Iterable[Product], pixels: Interval) -> Iterator[Interval]:
+def _products(source: _Source, stage: Pass) -> tuple[Product, ...]:
+    terms = stage.kernel.terms
+    reads = (Read(source.rows, t.dy, t.dx) for t in terms)
+    if source.registers is not None:
+        return tuple(
+            Product(t.integer, read, number)
+            for number, (t, read) in enumerate(zip(terms, reads, strict=True))
+        )
+    return tuple(
+        Product(t.integer, read) for t, read in zip(terms, reads, strict=True) if t.integer
+    )
+
+
+def _running(start: int, terms: Iterable[Product], source: _Source) -> Iterator[Interval]:
     """Yield the intervals of the partial sums in order, the start value first."""
-    total = Interval(start, start)
-    yield total
-    for term in terms:
-        total = add(total, scale(pixels, term.coefficient))
-        yield total
+    yield Interval(start, start)
+    for total in partial_sums(terms, {source.rows: source.pixels}, source.registers):
+        yield shift(total, start)
 
 
-def _operands(terms: Iterable[Product], pixels: Interval) -> Iterator[Interval]:
+def _operands(terms: Iterable[Product], source: _Source) -> Iterator[Interval]:
     """Yield what C needs to multiply: the magnitude of each coefficient, and of each product.
 
-    A negative coefficient is written as a subtraction. Pixels may be nothing but zero.
+    A negative coefficient is written as a subtraction, one given at run time is added as it
+    is. Pixels may be nothing but zero.
     """
     for term in terms:
-        size = abs(term.coefficient)
-        yield hull((scale(pixels, size), Interval(size, size)))
+        factor = coefficient_range(term, source.registers)
+        made = (
+            scale(source.pixels, abs(term.coefficient))
+            if term.register is None
+            else product_range(term, source.pixels, source.registers)
+        )
+        yield hull((made, factor))
 
 
 def _sum(source: _Source, start: int, terms: tuple[Product, ...]) -> tuple[Sum, Interval]:
-    partials = tuple(_running(start, terms, source.pixels))
-    cell = work_cell((*partials, *_operands(terms, source.pixels), source.pixels))
+    partials = tuple(_running(start, terms, source))
+    cell = work_cell((*partials, *_operands(terms, source), source.pixels))
     by_row = (tuple(group) for _, group in groupby(terms, key=lambda term: term.of.dy))
-    groups = tuple(g for row in by_row for g in _groups(row, source.pixels, cell))
+    groups = tuple(g for row in by_row for g in _groups(row, source, cell))
     return Sum(start, groups, cell), partials[-1]
 
 
-def _groups(row: tuple[Product, ...], pixels: Interval, cell: Cell) -> tuple[Group, ...]:
+def _groups(row: tuple[Product, ...], source: _Source, cell: Cell) -> tuple[Group, ...]:
     """Return the taps of one row as one group if its sum fits, else one by one."""
-    inside = hull((*_running(0, row, pixels), *_operands(row, pixels)))
+    inside = hull((*_running(0, row, source), *_operands(row, source)))
     if fits(inside, INT16):
         return (Group(row, INT16),)
     if fits(inside, cell):
@@ -241,12 +272,12 @@ def _saturating(
     source: _Source, start: int, terms: tuple[Product, ...], limits: Interval
 ) -> tuple[SaturatingSum, Interval]:
     total = unclamped = clamp_to(Interval(start, start), limits)
-    for term in terms:
-        free = add(total, scale(source.pixels, term.coefficient))
+    made = [product_range(term, source.pixels, source.registers) for term in terms]
+    for product in made:
+        free = add(total, product)
         total = clamp_to(free, limits)
         unclamped = hull((unclamped, free))
-    products = hull((Interval(0, 0), *_operands(terms, source.pixels)))
-    products = hull((products, *(scale(source.pixels, t.coefficient) for t in terms)))
+    products = hull((Interval(0, 0), *_operands(terms, source), *made))
     try:
         cell, guarded = work_cell((unclamped, products, source.pixels)), False
     except TooWideError:

@@ -6,14 +6,14 @@ legal, since other frames are turned away before.
 """
 
 from collections import Counter
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 from guardbit.arith.intervals import add, clamp_to, contains, hull, scale, shift, wrapped
 from guardbit.arith.rounding import rounding_constant
 from guardbit.arith.words import container_range
 from guardbit.model.enums import BorderMode, Outside, Overflow, Preload
-from guardbit.model.filter import Filter, Pass
+from guardbit.model.filter import Filter, Pass, TapSet, registers_of
 from guardbit.model.plan import (
     Cell,
     Exact,
@@ -35,17 +35,21 @@ from guardbit.model.plan import (
 from guardbit.model.sizing import Interval
 from guardbit.plan.cells import INT16, cell_range
 from guardbit.plan.replay import divide
+from guardbit.plan.sums import Rows, coefficient_range, partial_sums, product_range
 from guardbit.plan.tail import constants
-
-Rows = Mapping[str, Interval]
 
 
 @dataclass(frozen=True)
 class Form:
-    """start + sum of coefficient * row value at an offset: what a step's sum is."""
+    """start + sum of coefficient * row value at an offset: what a step's sum is.
+
+    `registers` are the offsets whose coefficient is given at run time, each with the number
+    of the kernel's term that it stands for.
+    """
 
     start: int
     taps: tuple[tuple[tuple[int, int], int], ...]
+    registers: tuple[tuple[tuple[int, int], int], ...] = ()
 
 
 @dataclass(frozen=True)
@@ -82,8 +86,9 @@ def evaluate(plan: Plan, f: Filter) -> Evaluation:
     loaded, owed = _load(plan, f)
     obligations = list(owed)
     rows = {plan.load.into: loaded}
+    obligations += _tap_type(plan, f)
     for step in plan.steps:
-        stored, owed = _step(step, rows)
+        stored, owed = _step(step, rows, f.passes[step.stage].kernel.registers)
         rows[step.writes] = stored
         obligations += owed
     return Evaluation(tuple(_form(step) for step in plan.steps), tuple(obligations))
@@ -128,16 +133,33 @@ def _load(plan: Plan, f: Filter) -> tuple[Interval, list[Obligation]]:
 def _form(step: Step) -> Form:
     inner = accumulator(step.value.of)
     taps: Counter[tuple[int, int]] = Counter()
-    for group in inner.groups:
-        for term in group.terms:
+    registers: list[tuple[tuple[int, int], int]] = []
+    for term in (term for group in inner.groups for term in group.terms):
+        if term.register is None:
             taps[term.of.dy, term.of.dx] += term.coefficient
-    return Form(inner.start, tuple(sorted((at, k) for at, k in taps.items() if k)))
+        else:
+            registers.append(((term.of.dy, term.of.dx), term.register))
+    known = tuple(sorted((at, k) for at, k in taps.items() if k))
+    return Form(inner.start, known, tuple(sorted(registers)))
 
 
-def _step(step: Step, rows: Rows) -> tuple[Interval, list[Obligation]]:
+def _tap_type(plan: Plan, f: Filter) -> Iterator[Obligation]:
+    """Yield what the type of coefficients given at run time owes. Raises PlanFaultError."""
+    registers = registers_of(f)
+    if (registers is None) != (plan.taps is None):
+        raise PlanFaultError("the type of the coefficients is not told, or told for none")
+    if registers is not None and plan.taps is not None:
+        held = Interval(min(registers.least), max(registers.greatest))
+        yield Obligation("coefficient given", held, plan.taps)
+
+
+def _step(step: Step, rows: Rows, registers: TapSet | None) -> tuple[Interval, list[Obligation]]:
     """Return what a step stores, and its obligations."""
     inner = accumulator(step.value.of)
-    total, owed = _total(inner, rows)
+    numbers = {t.register for group in inner.groups for t in group.terms} - {None}
+    if numbers and (registers is None or not numbers <= {*range(len(registers.cells))}):
+        raise PlanFaultError(f"{step.name}: reads registers that there are not")
+    total, owed = _total(inner, rows, registers)
     if isinstance(step.value.of, Field):
         field = step.value.of
         total = wrapped(total, field.bits, field.signed)
@@ -150,24 +172,41 @@ def _step(step: Step, rows: Rows) -> tuple[Interval, list[Obligation]]:
     return stored, [Obligation(f"{step.name}: {o.what}", o.values, o.cell) for o in owed]
 
 
-def _total(value: Sum | SaturatingSum, rows: Rows) -> tuple[Interval, list[Obligation]]:
+def _total(
+    value: Sum | SaturatingSum, rows: Rows, registers: TapSet | None
+) -> tuple[Interval, list[Obligation]]:
     """Return what a sum can be at its end, and its obligations all the way."""
     total = Interval(value.start, value.start)
     owed = [Obligation("start", total, value.cell)]
-    for group in value.groups:
-        part, inside = _group(group, value.cell, rows)
+    done = _sums_after_groups(value, rows, registers)
+    for group, unlimited in zip(value.groups, done, strict=True):
+        part, inside = _group(group, value.cell, rows, registers)
         owed += inside
-        free = add(total, part)
         if isinstance(value, SaturatingSum):
+            free = add(total, part)
             owed += _clamping(value, free, part)
             total = clamp_to(free, value.limits)
         else:
-            total = free
+            total = unlimited
         owed.append(Obligation("sum", total, value.cell))
     return total, [] if isinstance(value, Sum) and value.modular else owed
 
 
-def _group(group: Group, wide: Cell, rows: Rows) -> tuple[Interval, list[Obligation]]:
+def _sums_after_groups(
+    value: Sum | SaturatingSum, rows: Rows, registers: TapSet | None
+) -> Iterator[Interval]:
+    """Yield what the sum reaches after each group if nothing clamps it."""
+    sums = partial_sums((t for group in value.groups for t in group.terms), rows, registers)
+    total = Interval(0, 0)
+    for group in value.groups:
+        for _ in group.terms:
+            total = next(sums)
+        yield shift(total, value.start)
+
+
+def _group(
+    group: Group, wide: Cell, rows: Rows, registers: TapSet | None
+) -> tuple[Interval, list[Obligation]]:
     """Return what a group adds up to, and its obligations.
 
     C writes a negative coefficient as a subtraction, so that the opposite of the product is
@@ -175,14 +214,16 @@ def _group(group: Group, wide: Cell, rows: Rows) -> tuple[Interval, list[Obligat
     """
     part = Interval(0, 0)
     owed = []
-    for term in group.terms:
-        pixel, size = rows[term.of.rows], abs(term.coefficient)
-        part = add(part, scale(pixel, term.coefficient))
+    parts = partial_sums(group.terms, rows, registers)
+    for term, part in zip(group.terms, parts, strict=True):
+        pixel = rows[term.of.rows]
+        product = product_range(term, pixel, registers)
+        size = scale(pixel, abs(term.coefficient)) if term.register is None else product
         owed += [
             Obligation("operand", pixel, wide if group.cell == INT16 else group.cell),
-            Obligation("product", scale(pixel, term.coefficient), group.cell),
-            Obligation("product", scale(pixel, size), group.cell),
-            Obligation("coefficient", Interval(size, size), group.cell),
+            Obligation("product", product, group.cell),
+            Obligation("product", size, group.cell),
+            Obligation("coefficient", coefficient_range(term, registers), group.cell),
             Obligation("group", part, group.cell),
         ]
     return part, owed

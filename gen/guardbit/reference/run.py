@@ -43,7 +43,8 @@ def respond(filter: Filter, frame: Array) -> Response:
 def rejects(filter: Filter, frame: Array) -> bool:
     """Return whether a `reject` filter refuses the frame: an illegal code in a row it reads.
 
-    A row counts, whole, if a tap that is not zero reads it for some output of the frame.
+    A row counts, whole, if a tap that is not zero reads it for some output of the frame; a tap
+    in a register counts whatever it holds.
     """
     rows, columns = output_positions(filter, *_size(filter, frame))
     if filter.outside is not Outside.REJECT or not rows or not columns:
@@ -51,7 +52,7 @@ def rejects(filter: Filter, frame: Array) -> bool:
     height = frame.shape[0]
     offsets = {0}
     for which in filter.passes:
-        offsets = {a + b for a in offsets for b in _row_offsets(which)}
+        offsets = {a + b for a in offsets for b in {term.dy for term in which.kernel.live}}
     read = {int(row) for dy in offsets for row in _index(filter, 0, moved(rows, dy), height)}
     codes = frame[sorted(read - {height})]
     return bool(np.any((codes < filter.input.low) | (codes > filter.input.high)))

@@ -13,6 +13,7 @@ from guardbit.reference.run import rejects, respond
 from guardbit.verify.bench import Bench, Trials
 from guardbit.verify.cases import Case
 from guardbit.verify.compare import findings
+from guardbit.verify.loadings import illegal_loadings
 from guardbit.verify.wording import left_out
 
 NAME = "calls"
@@ -25,7 +26,9 @@ def cases(bench: Bench) -> list[Case]:
     vector = _vector(bench)
     if vector is None:
         return []
-    wrong = list(_wrong_arguments(bench, vector)) if bench.routine.frame.status else []
+    wrong: list[Case] = []
+    if bench.routine.frame.status:
+        wrong = [*_wrong_arguments(bench, vector), *_wrong_taps(bench, vector)]
     return wrong + list(_codes(bench, vector))
 
 
@@ -57,6 +60,17 @@ def _wrong_arguments(bench: Bench, vector: Vector) -> Iterator[Case]:
             yield Case(f"band-rows-{first}-{last}", call, Status.BAD_SIZE, None)
 
 
+def _wrong_taps(bench: Bench, vector: Vector) -> Iterator[Case]:
+    """Yield calls with taps that may not be loaded, for a filter that takes any."""
+    if bench.routine.taps is None:
+        return
+    shape = vector.response.output.shape[:2]
+    for number, illegal in enumerate(illegal_loadings(bench.filter, bench.routine.taps.word)):
+        bands = ((0, shape[0]),) if bench.routine.band and number % 2 else ()
+        call = Call(vector.frame, shape, bands, taps=illegal.cells)
+        yield Case(f"taps-{illegal.name}", call, Status.BAD_TAPS, None)
+
+
 def _faults(bench: Bench, vector: Vector) -> Iterator[tuple[str, Role, int | None, Status]]:
     """Yield (name, role, wrong value, the status that it deserves) for the roles there are."""
     routine = bench.routine
@@ -67,6 +81,7 @@ def _faults(bench: Bench, vector: Vector) -> Iterator[tuple[str, Role, int | Non
         ("no-source", Role.SRC, None, Status.BAD_POINTER),
         ("no-destination", Role.DST, None, Status.BAD_POINTER),
         ("no-scratch", Role.SCRATCH, None, Status.BAD_POINTER),
+        ("no-taps", Role.TAPS, None, Status.BAD_POINTER),
         ("short-scratch", Role.SCRATCH_LEN, length - 1, Status.BAD_SCRATCH),
         ("empty-scratch", Role.SCRATCH_LEN, 0, Status.BAD_SCRATCH),
     ]
@@ -117,6 +132,11 @@ def _with_code(frame: Codes, place: tuple[int, int, int], code: int) -> Codes:
     return changed
 
 
+def _is_of_code(case: Case) -> bool:
+    """Return whether it is a frame with codes outside the range, not a wrong argument."""
+    return not case.call.faults and case.call.taps is None
+
+
 def result(bench: Bench, trials: Trials) -> RungResult:
     """Return whether wrong calls are refused, and codes outside the range are treated."""
     if not trials.cases:
@@ -124,9 +144,9 @@ def result(bench: Bench, trials: Trials) -> RungResult:
         return RungResult(NAME, False, 0, (), (why,), (), ())
     found, failed, left = findings(bench, trials)
     refused = sum(case.status is not Status.OK for case in trials.cases)
-    codes = sum(not case.call.faults for case in trials.cases)
+    codes = sum(_is_of_code(case) for case in trials.cases)
     notes = [] if codes else ["the input's type holds no code outside the range"]
-    if any(not case.specified and not case.call.faults for case in trials.cases):
+    if any(not case.specified and _is_of_code(case) for case in trials.cases):
         notes.append("outputs for codes outside the range are unspecified: looked at for harm only")
     if not bench.routine.frame.status:
         notes.append("the routine tells no status")

@@ -25,18 +25,20 @@ class Case:
     size: tuple[int, int] | None = None
 
 
-def from_vector(vector: Vector, src_gap: int = 0, dst_gap: int = 0) -> Case:
-    """Return the case that a whole frame is, with gaps between rows if wanted."""
+def from_vector(
+    vector: Vector, src_gap: int = 0, dst_gap: int = 0, taps: tuple[int, ...] | None = None
+) -> Case:
+    """Return the case that a whole frame is, with gaps between rows and other taps if wanted."""
     output = vector.response.output
     shape = (output.shape[0], output.shape[1])
-    call = Call(vector.frame, shape, src_gap=src_gap, dst_gap=dst_gap)
+    call = Call(vector.frame, shape, src_gap=src_gap, dst_gap=dst_gap, taps=taps)
     return Case(vector.name, call, Status.OK, output, size=shape)
 
 
-def from_vectors(vectors: Iterable[Vector]) -> list[Case]:
+def from_vectors(vectors: Iterable[Vector], taps: tuple[int, ...] | None = None) -> list[Case]:
     """Return a case per vector; every third one has gaps between the rows of both images."""
     return [
-        from_vector(vector, *((3, 5) if number % 3 == 1 else (0, 0)))
+        from_vector(vector, *((3, 5) if number % 3 == 1 else (0, 0)), taps)
         for number, vector in enumerate(vectors)
     ]
 

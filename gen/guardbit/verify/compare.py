@@ -1,10 +1,12 @@
 """Outcomes against what the contract says, as findings that a person can work with."""
 
 from collections.abc import Iterator, Sequence
+from typing import TypeAlias
 
 import numpy as np
 
 from guardbit.build.reproducer import keep
+from guardbit.model.filter import Filter, loaded, registers_of
 from guardbit.model.finding import Finding, Place, finding
 from guardbit.model.routine import UNWRITTEN, Codes, Harm, Outcome
 from guardbit.vectors.classes import labels, named
@@ -86,11 +88,17 @@ def _got(outcome: Outcome) -> Codes:
     return outcome.output
 
 
-def _mismatches(failed: Sequence[tuple[Case, Outcome]]) -> list[Mismatch]:
-    """Return a few whole-frame mismatches, small and large, that one cause has to explain."""
+_Others: TypeAlias = Sequence[tuple[Mismatch, tuple[int, ...] | None]]
+
+
+def _mismatches(failed: Sequence[tuple[Case, Outcome]]) -> _Others:
+    """Return a few whole-frame mismatches, small and large, that one cause has to explain.
+
+    Each comes with the taps of its call, None for the filter's own.
+    """
     whole = [p for p in failed if not p[0].call.bands and p[0].call.frame.size <= _LARGEST]
     chosen = whole[:2] + whole[-2:] if len(whole) > 4 else whole
-    return [Mismatch(c.call.frame, _expected(c), _got(o)) for c, o in chosen]
+    return [(Mismatch(c.call.frame, _expected(c), _got(o)), c.call.taps) for c, o in chosen]
 
 
 def _described(
@@ -98,7 +106,7 @@ def _described(
     runner: str,
     kind: str,
     pair: tuple[Case, Outcome],
-    others: Sequence[Mismatch],
+    others: _Others,
 ) -> Finding:
     """Return the finding of a failed case, and keep its reproducer if a folder is given."""
     case, _ = pair
@@ -115,7 +123,7 @@ def _described(
 
 
 def _values(
-    bench: Bench, kind: str, pair: tuple[Case, Outcome], others: Sequence[Mismatch]
+    bench: Bench, kind: str, pair: tuple[Case, Outcome], others: _Others
 ) -> Iterator[tuple[str, str | int]]:
     case, outcome = pair
     match kind:
@@ -127,15 +135,24 @@ def _values(
             yield "got", "{} rows of {}".format(*(outcome.size or (0, 0)))
         case "output-differs":
             wrong = Mismatch(case.call.frame, _expected(case), _got(outcome))
-            yield from _mismatch(bench, wrong, others)
+            alike = [each for each, taps in others if taps == case.call.taps]
+            yield from _mismatch(_filter(bench, case), wrong, alike)
         case "destination-touched":
             yield "status", case.status
         case _:
             yield "detail", outcome.detail or "no more is known"
 
 
+def _filter(bench: Bench, case: Case) -> Filter:
+    """Return the filter with the taps that a case was given."""
+    registers = registers_of(bench.filter)
+    if registers is None or case.call.taps is None:
+        return bench.filter
+    return loaded(bench.filter, [case.call.taps[cell] for cell in registers.cells])
+
+
 def _mismatch(
-    bench: Bench, wrong: Mismatch, others: Sequence[Mismatch]
+    f: Filter, wrong: Mismatch, others: Sequence[Mismatch]
 ) -> Iterator[tuple[str, str | int]]:
     expected, got = wrong.expected, wrong.got
     row, column, channel = wrong.first
@@ -143,14 +160,14 @@ def _mismatch(
     yield "column", column
     yield "channel", channel
     height, width, _ = wrong.frame.shape
-    across = labels(bench.filter, 1, width)[column]
-    yield "position", named((labels(bench.filter, 0, height)[row], across))
+    across = labels(f, 1, width)[column]
+    yield "position", named((labels(f, 0, height)[row], across))
     yield "expected", _cell(expected[row, column, channel])
     yield "got", _cell(got[row, column, channel])
     yield "count", int((expected != got).sum())
     yield "of", int(expected.size)
-    yield "window", window(bench.filter, wrong.frame, (row, column, channel))
-    yield "explains", explanation(bench.filter, wrong, others)
+    yield "window", window(f, wrong.frame, (row, column, channel))
+    yield "explains", explanation(f, wrong, others)
 
 
 def _cell(value: int) -> str:

@@ -10,8 +10,8 @@ from guardbit.model.enums import Outside, Overflow
 from guardbit.model.filter import Filter
 from guardbit.model.finding import Finding, finding
 from guardbit.model.vectors import Purpose, Vector
-from guardbit.verify.bench import Bench, Trials
-from guardbit.verify.cases import Case, from_vectors
+from guardbit.verify.bench import Bench, Trials, with_loads
+from guardbit.verify.cases import Case
 from guardbit.verify.compare import findings
 from guardbit.verify.second import in_register, register, requantised, second_sums
 from guardbit.verify.typing import Array
@@ -34,7 +34,7 @@ class _Agreement:
 
 def cases(bench: Bench) -> list[Case]:
     """Return a case per frame; every third has gaps between rows."""
-    return from_vectors(bench.frames)
+    return with_loads(bench, bench.frames, [load.frames for load in bench.loads])
 
 
 def result(bench: Bench, trials: Trials) -> RungResult:
@@ -63,9 +63,11 @@ def _covered(bench: Bench, agreement: _Agreement) -> tuple[str, ...]:
     for vector in bench.frames:
         count[vector.purpose] += 1
     shapes = {vector.frame.shape for vector in bench.frames}
+    more = sum(len(load.frames) for load in bench.loads)
     return (
         ", ".join(f"{n} {purpose}" for purpose, n in count.items() if n)
         + f" frames of {len(shapes)} sizes, bit for bit against the NumPy reference",
+        *([f"{more} of them again with {len(bench.loads)} other legal taps"] * (more > 0)),
         f"{agreement.confirmed} accumulator values against scipy.signal.convolve2d, on images "
         "extended by np.pad",
         f"{agreement.requantised} codes against a second statement of the requantiser",
@@ -103,7 +105,7 @@ def _agreement(bench: Bench) -> _Agreement:
     confirmed, unsure, skipped = 0, 0, 0
     found: list[Finding] = []
     work = 0
-    for vector in sorted(bench.frames, key=lambda v: v.frame.size):
+    for f, vector in sorted(_answered(bench), key=lambda pair: pair[1].frame.size):
         work += vector.frame.size * bench.taps
         if work > _MOST_WORK:
             skipped += 1
@@ -111,8 +113,14 @@ def _agreement(bench: Bench) -> _Agreement:
         good, open_, wrong = _sums_agree(f, vector, may)
         confirmed, unsure = confirmed + good, unsure + open_
         found += wrong
-    codes, wrong = _codes_agree(f, bench.frames)
+    codes, wrong = _codes_agree(f, tuple(vector for _, vector in _answered(bench)))
     return _Agreement(confirmed, unsure, skipped, codes, (*found[:3], *wrong))
+
+
+def _answered(bench: Bench) -> list[tuple[Filter, Vector]]:
+    """Return every frame with the filter that its response is of."""
+    own = [(bench.filter, vector) for vector in bench.frames]
+    return own + [(load.filter, vector) for load in bench.loads for vector in load.frames]
 
 
 def _sums_agree(

@@ -1,15 +1,18 @@
 """Rung: frames that attain the exact worst cases of every register."""
 
+from dataclasses import replace
+
 import numpy as np
 
 from guardbit.arith.borders import positions
 from guardbit.model.certificate import Figure, RungResult
+from guardbit.model.filter import raster, registers_of
 from guardbit.model.finding import Finding, finding
 from guardbit.model.sizing import Witness
 from guardbit.model.vectors import Vector
 from guardbit.vectors.witnesses import MOST_PIXELS, Attained, Shows
-from guardbit.verify.bench import Bench, Trials
-from guardbit.verify.cases import Case, from_vectors
+from guardbit.verify.bench import Bench, Trials, with_loads
+from guardbit.verify.cases import Case
 from guardbit.verify.compare import findings
 from guardbit.verify.wording import left_out
 
@@ -17,8 +20,19 @@ NAME = "witnesses"
 
 
 def cases(bench: Bench) -> list[Case]:
-    """Return a case per witness that is small enough to run."""
-    return from_vectors(bench.witnessing)
+    """Return a case per witness that is small enough to run, and the ends of other taps."""
+    cases = with_loads(bench, bench.witnessing, [load.extremes for load in bench.loads])
+    shown = [a.witness for a in bench.attained if a.stimulus is not None]
+    own = [_loaded(bench, case, w) for case, w in zip(cases, shown, strict=False)]
+    return [*own, *cases[len(own) :]]
+
+
+def _loaded(bench: Bench, case: Case, witness: Witness) -> Case:
+    """Return a witness's case with the taps that it is for."""
+    registers = registers_of(bench.filter)
+    if registers is None or witness.taps is None:
+        return case
+    return replace(case, call=replace(case.call, taps=raster(registers, witness.taps)))
 
 
 def result(bench: Bench, trials: Trials) -> RungResult:
@@ -37,7 +51,7 @@ def result(bench: Bench, trials: Trials) -> RungResult:
         NAME,
         ran=True,
         cases=trials.made,
-        covered=_covered(bench),
+        covered=(*_covered(bench), *_loads(bench)),
         not_covered=(*skipped, *hidden, *_inexact(bench), *left_out(left)),
         figures=(
             Figure("worst cases attained in the reference", checked),
@@ -63,6 +77,11 @@ def _covered(bench: Bench) -> tuple[str, ...]:
         text = f"{w.end} {_KINDS[attained.shows]} {w.value}"
         ends.setdefault(w.register, []).append(text)
     return tuple(f"{register}: {', '.join(found)}" for register, found in ends.items())
+
+
+def _loads(bench: Bench) -> tuple[str, ...]:
+    count = sum(bool(load.extremes) for load in bench.loads)
+    return (f"the least and greatest sum of {count} other legal taps",) if count else ()
 
 
 def _attained(bench: Bench) -> tuple[int, tuple[Finding, ...]]:
