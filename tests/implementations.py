@@ -11,13 +11,27 @@ import pytest
 
 import oracle
 from guardbit.build.library import Library
+from guardbit.model.filter import Filter
 from guardbit.model.finding import SpecError
 from guardbit.model.routine import Call, Outcome
 from guardbit.reference.run import rejects, respond
-from packaged import BAD_CODE, Image, Made, codes, image_of, library, made, sized
+from packaged import (
+    BAD_CODE,
+    BAD_TAPS,
+    Image,
+    Made,
+    cells_of,
+    codes,
+    image_of,
+    library,
+    made,
+    sized,
+    with_taps,
+)
 
 Rows = list[list[int]]
-Implementation = Callable[[str, Image], tuple[Image, Image | None]]
+Taps = Rows | None
+Implementation = Callable[[str, Image, Taps], tuple[Image, Image | None]]
 
 FOLDER = Path(__file__).parent / "contract" / "cases"
 
@@ -30,23 +44,33 @@ class RejectedError(ValueError):
     """The implementation refuses the frame for a code outside the range (BAD_CODE)."""
 
 
-def by_oracle(spec: str, image: Image) -> tuple[Image, Image | None]:
+class IllegalTapsError(ValueError):
+    """The implementation refuses the taps (BAD_TAPS)."""
+
+
+def by_oracle(spec: str, image: Image, taps: Taps = None) -> tuple[Image, Image | None]:
     """The oracle's output and accumulators."""
     try:
         contract = oracle.load(spec, FOLDER)
     except oracle.ContradictionError as error:
         raise RefusedError(str(error)) from error
+    if taps is not None:
+        assert contract.registers is not None
+        if not contract.registers.allows(taps):
+            raise IllegalTapsError
+        contract = oracle.load(spec, FOLDER, taps)
     if oracle.rejects(contract, image):
         raise RejectedError
     return oracle.run(contract, image)
 
 
-def by_reference(spec: str, image: Image) -> tuple[Image, Image | None]:
+def by_reference(spec: str, image: Image, taps: Taps = None) -> tuple[Image, Image | None]:
     """The NumPy reference's output and accumulators."""
     try:
         f = sized(spec, FOLDER, "case").filter
     except SpecError as error:
         raise RefusedError(str(error)) from error
+    f = f if taps is None else _loaded(f, taps)
     frame = codes(image)
     if rejects(f, frame):
         raise RejectedError
@@ -55,25 +79,36 @@ def by_reference(spec: str, image: Image) -> tuple[Image, Image | None]:
     return image_of(response.output), accumulators.tolist() if accumulators.size else []
 
 
-def by_compiled(spec: str, image: Image) -> tuple[Image, Image | None]:
+def _loaded(f: Filter, taps: Rows) -> Filter:
+    """The filter with other taps. Raises IllegalTapsError."""
+    found = with_taps(f, taps)
+    if found is None:
+        raise IllegalTapsError
+    return found
+
+
+def by_compiled(spec: str, image: Image, taps: Taps = None) -> tuple[Image, Image | None]:
     """The emitted C's output; its accumulators are not seen."""
     found = _compiled_cases().get(spec) or _compiled(spec)
     if isinstance(found, SpecError):
         raise RefusedError(str(found)) from found
     made_, library_ = found
-    outcome = _run(made_, library_, image)
+    outcome = _run(made_, library_, image, taps)
     assert outcome.harm is None, (outcome.harm, outcome.detail)
     if outcome.statuses == (BAD_CODE,):
         raise RejectedError
+    if outcome.statuses == (BAD_TAPS,):
+        raise IllegalTapsError
     assert outcome.statuses == (0,)
     assert outcome.output is not None
     return image_of(outcome.output), None
 
 
-def _run(made_: Made, library_: Library, image: Image) -> Outcome:
+def _run(made_: Made, library_: Library, image: Image, taps: Taps) -> Outcome:
     frame = codes(image)
     shape = respond(made_.sizing.filter, frame).output.shape[:2]
-    (outcome,) = library_.run([(made_.emission.routine, Call(frame, (shape[0], shape[1])))])
+    call = Call(frame, (shape[0], shape[1]), taps=None if taps is None else cells_of(taps))
+    (outcome,) = library_.run([(made_.emission.routine, call)])
     assert outcome.size is None or outcome.size == shape or 0 in shape
     return outcome
 
@@ -110,7 +145,9 @@ def _compiled_cases() -> dict[str, Compiled]:
 
 
 def implementations() -> list[tuple[str, Implementation]]:
-    """A label and a function (text of a spec, image) -> (output, accumulators or None) for each.
+    """A label and a function (spec, image, taps) -> (output, accumulators or None) for each.
+
+    The spec is a text; taps are loaded into coefficient registers (None: those of the kernel).
 
     Images are lists of rows of pixels, a pixel a list of channels; an empty output is [].
     Paths in a spec are relative to the folder of the contract's cases. The function raises
@@ -126,12 +163,12 @@ each_implementation = pytest.mark.parametrize(
 
 def filtered(implementation: Implementation, spec: str, rows: Rows) -> Rows:
     """The output of a one-channel image, as rows of numbers."""
-    return _plain(implementation(spec, _pixels(rows))[0])
+    return _plain(implementation(spec, _pixels(rows), None)[0])
 
 
 def summed(implementation: Implementation, spec: str, rows: Rows) -> Rows | None:
     """The accumulators of a one-channel image, as rows of numbers, where they are seen."""
-    accumulators = implementation(spec, _pixels(rows))[1]
+    accumulators = implementation(spec, _pixels(rows), None)[1]
     return None if accumulators is None else _plain(accumulators)
 
 

@@ -14,12 +14,16 @@ from collections.abc import Callable
 from fractions import Fraction
 
 from gainfit import ContradictionError
-from oracle_reading import Contract, Register, Stage, limits, load
+from oracle_reading import Contract, Register, Stage, load
+from oracle_registers import Integers, Loadable
+from oracle_words import limits
 
 __all__ = [
     "Contract",
     "ContradictionError",
     "Image",
+    "Integers",
+    "Loadable",
     "Stage",
     "UnsafeError",
     "load",

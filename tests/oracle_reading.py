@@ -16,9 +16,17 @@ from pathlib import Path
 from typing import Any
 
 from gainfit import ContradictionError, gain, nearest_even
+from oracle_registers import (
+    Integers,
+    Kernel,
+    Loadable,
+    Matrix,
+    loadable_of,
+    loaded_kernel,
+    with_bits,
+)
+from oracle_words import between, limits, need
 
-Matrix = list[list[Fraction]]
-Integers = list[list[int]]
 Number = int | str | float | Decimal
 
 FORMAT = {"frac": None, "signed": None, "pedestal": 0, "rounding": "ties-to-positive"}
@@ -30,7 +38,7 @@ DEFAULTS: dict[str, dict[str, Any]] = {
     "input": {"bits": None, "signed": False, "frac": 0, "pedestal": 0, "range": None}
     | {"container": None, "outside": "undefined"},
     "coefficient": {"bits": "auto", "signed": True, "frac": None, "fit": "nearest"}
-    | {"scale": "binary", "pinned": None},
+    | {"scale": "binary", "pinned": None, "registers": None},
     "intermediate": FORMAT
     | {"first": "vertical", "bits": None, "signed": True}
     | {"overflow": "saturate", "accumulator": REGISTER},
@@ -110,22 +118,8 @@ class Contract:
     channels: int
     heights: tuple[int, int]
     widths: tuple[int, int]
-
-
-def limits(bits: int, signed: bool) -> tuple[int, int]:
-    """The least and greatest number of a two's complement or unsigned word."""
-    return (-(2 ** (bits - 1)), 2 ** (bits - 1) - 1) if signed else (0, 2**bits - 1)
-
-
-def need(holds: bool, complaint: str) -> None:
-    """Nothing; ContradictionError where `holds` is false."""
-    if not holds:
-        raise ContradictionError(complaint)
-
-
-def between(low: int, high: int, *numbers: object) -> bool:
-    """Whether each of the numbers is an integer from low to high."""
-    return all(type(number) is int and low <= number <= high for number in numbers)
+    registers: Loadable | None = None
+    taps: Integers | None = None
 
 
 def rational(value: Number) -> Fraction:
@@ -263,9 +257,6 @@ def quantised(
     return fitted(exact, 0, table | {"fit": "nearest"}), Fraction(2) ** -frac
 
 
-Kernel = tuple[Integers, Fraction, str]
-
-
 def outer(column: list[Any], row: list[Any]) -> list[list[Any]]:
     """The matrix column * row."""
     return [[upper * left for left in row] for upper in column]
@@ -284,22 +275,35 @@ def paired_kernels(tables: dict[str, Any], column: Matrix, row: Matrix) -> tuple
     return (*down, "vertical"), (*along, "horizontal")
 
 
+KERNELS = ("taps", "column", "row", "file")
+
+
+def ideal_of(tables: dict[str, Any], folder: Path) -> Matrix:
+    """The ideal taps before division, as one matrix."""
+    kernel = tables["kernel"]
+    given = [key for key in KERNELS if kernel[key] is not None]
+    if given == ["column", "row"]:
+        column, row = ([rational(tap) for tap in kernel[key]] for key in given)
+        need(bool(column) and bool(row), "empty kernel")
+        return outer(column, row)
+    need(len(given) == 1 and given[0] not in ("column", "row"), "kernel keys")
+    rows = kernel["taps"] if given == ["taps"] else kernel_file(folder / kernel["file"])
+    ideal = [[rational(tap) for tap in row] for row in rows]
+    need(len({len(row) for row in ideal}) == 1 and bool(ideal[0]), "ragged or empty kernel")
+    return ideal
+
+
 def kernels_of(tables: dict[str, Any], folder: Path) -> list[Kernel]:
     """Integer taps, factor and direction of each pass, in the order of the passes."""
     kernel, table = tables["kernel"], tables["coefficient"]
     divisor, frac, pinned = kernel["divisor"], table["frac"], table["pinned"]
     paired = "intermediate" in tables or list in (type(divisor), type(frac))
-    given = [key for key in ("taps", "column", "row", "file") if kernel[key] is not None]
-    if given != ["column", "row"]:
-        need(len(given) == 1 and given[0] not in ("column", "row") and not paired, "kernel keys")
-        rows = kernel["taps"] if given == ["taps"] else kernel_file(folder / kernel["file"])
-        ideal = [[rational(tap) for tap in row] for row in rows]
-        need(len({len(row) for row in ideal}) == 1 and bool(ideal[0]), "ragged or empty kernel")
-        return [(*quantised(ideal, divisor, frac, table, pinned), "both")]
-    column, row = ([rational(tap) for tap in kernel[key]] for key in given)
-    need(bool(column) and bool(row), "empty kernel")
     if not paired:
-        return [(*quantised(outer(column, row), divisor, frac, table, pinned), "both")]
+        ideal = ideal_of(tables, folder)
+        return [(*quantised(ideal, divisor, frac, table, pinned), "both")]
+    need([kernel[key] is not None for key in KERNELS] == [False, True, True, False], "pairs")
+    column, row = ([rational(tap) for tap in kernel[key]] for key in ("column", "row"))
+    need(bool(column) and bool(row), "empty kernel")
     down, along = paired_kernels(tables, [[tap] for tap in column], [row])
     if "intermediate" in tables:
         return [down, along] if tables["intermediate"]["first"] == "vertical" else [along, down]
@@ -307,9 +311,17 @@ def kernels_of(tables: dict[str, Any], folder: Path) -> list[Kernel]:
 
 
 def stage_of(
-    tables: dict[str, Any], kernel: Kernel, origin: Sequence[int], frac: int, into: dict[str, Any]
+    tables: dict[str, Any],
+    kernel: Kernel,
+    origin: Sequence[int],
+    frac: int,
+    into: dict[str, Any],
+    rule: Loadable | None = None,
 ) -> Stage:
-    """The pass that applies `kernel` to a signal of `frac` and requantises as `into` says."""
+    """The pass that applies `kernel` to a signal of `frac` and requantises as `into` says.
+
+    Terms are all taps that are not zero, or that could be loaded so.
+    """
     taps, factor, direction = kernel
     sign = 1 if tables["filter"]["operation"] == "correlation" else -1
     pitch = tables["image"]["spacing"]
@@ -319,7 +331,7 @@ def stage_of(
         (sign * (i - at[0]) * pitch[0], sign * (j - at[1]) * pitch[1], tap)
         for i, row in enumerate(taps)
         for j, tap in enumerate(row)
-        if tap
+        if tap or (rule is not None and rule.holds(i, j))
     )
     target = pixel_format(into, 2 if "accumulator" in into else 1, 32)
     scale = factor * Fraction(2) ** (target.frac - frac)
@@ -378,19 +390,26 @@ def check_geometry(contract: Contract) -> None:
         need(not (empty and wide and continues), "an empty sublattice")
 
 
-def load(text: str, folder: Path = Path()) -> Contract:
-    """The contract that the spec's text states; ContradictionError where it states none."""
-    tables = tables_of(text)
+def load(text: str, folder: Path = Path(), taps: Integers | None = None) -> Contract:
+    """The contract that the spec's text states; ContradictionError where it states none.
+
+    `taps` are loaded into the coefficient registers, row by row of the kernel as it is written.
+    """
+    tables = with_bits(tables_of(text))
     image, border, kernel = tables["image"], tables["border"], tables["kernel"]
     source = pixel_format(tables["input"], 1, 16)
     kernels = kernels_of(tables, folder)
     box = max(len(taps) for taps, _, _ in kernels), max(len(taps[0]) for taps, _, _ in kernels)
     origin = kernel["origin"] or [(box[0] - 1) // 2, (box[1] - 1) // 2]
     need(between(1, 255, *box) and between(-1024, 1024, *origin), "box or origin")
+    rule = loadable_of(tables, box)
+    need(rule is not None or taps is None, "taps for a filter without registers")
+    if rule is not None:
+        kernels = [loaded_kernel(kernels[0], ideal_of(tables, folder), rule, taps)]
     into = [tables[name] for name in ("intermediate", "output") if name in tables]
     fracs = [source.frac, *(table["frac"] for table in into)]
     stages = tuple(
-        stage_of(tables, part, origin, frac, table)
+        stage_of(tables, part, origin, frac, table, rule)
         for part, frac, table in zip(kernels, fracs, into, strict=False)
     )
     container_limits(tables["output"]["container"], stages[-1].target)
@@ -415,6 +434,8 @@ def load(text: str, folder: Path = Path()) -> Contract:
         channels=image["channels"],
         heights=tuple(image["height"]),
         widths=tuple(image["width"]),
+        registers=rule,
+        taps=kernels[0][0] if rule is not None else None,
         **{key: tuple(image[key]) for key in ("step", "phase", "spacing")},
     )
     check_geometry(contract)

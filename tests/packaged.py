@@ -11,10 +11,12 @@ from pathlib import Path
 
 import numpy as np
 
+from guardbit.arith.tapset import is_member
 from guardbit.build.compiler import find_compiler
 from guardbit.build.library import Library, compile_library
 from guardbit.emit.emission import emit
 from guardbit.fit.resolve import resolve
+from guardbit.model.filter import Filter, loaded, raster, registers_of
 from guardbit.model.finding import SpecError
 from guardbit.model.routine import Codes, Emission
 from guardbit.model.sizing import Sizing
@@ -23,7 +25,8 @@ from guardbit.sizing.analyse import analyse, unmet
 from guardbit.spec.reader import parse_spec
 
 Image = list[list[list[int]]]
-BAD_CODE = 5
+Rows = list[list[int]]
+BAD_CODE, BAD_TAPS = 5, 6
 
 
 @dataclass(frozen=True)
@@ -63,6 +66,21 @@ def library(filters: Sequence[Made], label: str) -> Library:
     folder.mkdir(exist_ok=True)
     routines = [m.emission.routine for m in filters]
     return compile_library(find_compiler(), routines, (), folder)
+
+
+def cells_of(taps: Rows) -> tuple[int, ...]:
+    """The taps as a call takes them."""
+    return tuple(tap for row in taps for tap in row)
+
+
+def with_taps(f: Filter, taps: Rows) -> Filter | None:
+    """The filter with taps that are given row by row of its kernel; None: they are not legal."""
+    s = registers_of(f)
+    assert s is not None
+    cells = cells_of(taps)
+    chosen = [cells[cell] for cell in s.cells]
+    legal = is_member(s, chosen) and raster(s, chosen) == cells
+    return loaded(f, chosen) if legal else None
 
 
 def codes(image: Image) -> Codes:

@@ -12,25 +12,15 @@ from fractions import Fraction
 import oracle
 from randomframes import frames, random_frame
 from randomkernels import Tables, add_kernel, limits, often, quoted, random_code
+from randomregisters import add_registers, random_loading
+from randomtext import ORDER, text_of
 
-__all__ = ["frames", "is_sound", "random_frame", "random_spec"]
+__all__ = ["frames", "is_sound", "random_frame", "random_loading", "random_spec"]
 
 ROUNDINGS = ["toward-negative", "toward-positive", "toward-zero", "ties-to-even", "ties-to-away"]
 ROUNDINGS += ["ties-to-positive"] * 3
 MODES = ["constant", "replicate", "half-sample", "whole-sample", "periodic"]
 CONTAINERS = {f"{kind}{bits}": (kind == "i", bits) for bits in (8, 16, 32) for kind in "ui"}
-ORDER = ["filter", "kernel", "input", "coefficient", "intermediate", "intermediate.accumulator"]
-ORDER += ["accumulator", "output", "border", "image"]
-
-
-def text_of(tables: Tables) -> str:
-    """The TOML text of the tables; values are TOML already."""
-    blocks = [
-        "\n".join([f"[{name}]", *(f"{key} = {value}" for key, value in tables[name].items())])
-        for name in ORDER
-        if tables.get(name) or name == "input"
-    ]
-    return "\n".join(blocks) + "\n"
 
 
 def random_container(rng: random.Random, bits: int, signed: bool) -> str:
@@ -74,11 +64,17 @@ def random_input(rng: random.Random) -> dict[str, str]:
     return table
 
 
-def worst(stage: oracle.Stage, low: int, high: int) -> tuple[int, int]:
+def worst(
+    stage: oracle.Stage, low: int, high: int, rule: oracle.Loadable | None = None
+) -> tuple[int, int]:
     """Ends that no partial sum leaves, for a signal of low..high (coarse)."""
-    products = [sorted((tap * low, tap * high)) for _, _, tap in stage.terms]
+    limits_of = [(tap, tap) for _, _, tap in stage.terms]
+    if rule is not None:
+        rows = zip(rule.least, rule.greatest, strict=True)
+        limits_of = [ends for row in rows for ends in zip(*row, strict=True)]
+    products = [sorted(tap * code for tap in ends for code in (low, high)) for ends in limits_of]
     start = stage.register.preload
-    return start + sum(min(p[0], 0) for p in products), start + sum(max(p[1], 0) for p in products)
+    return start + sum(min(p[0], 0) for p in products), start + sum(max(p[-1], 0) for p in products)
 
 
 def width_for(low: int, high: int, signed: bool) -> int:
@@ -151,10 +147,15 @@ def random_target(rng: random.Random, bits: int, signed: bool, middle: bool) -> 
 
 
 def chosen_target(
-    rng: random.Random, stage: oracle.Stage, signal: tuple[int, int], frac: int, middle: bool
+    rng: random.Random,
+    stage: oracle.Stage,
+    signal: tuple[int, int],
+    frac: int,
+    middle: bool,
+    rule: oracle.Loadable | None = None,
 ) -> tuple[dict[str, str], dict[str, str]]:
     """The target table and the accumulator table of a stage that was read with frac = `frac`."""
-    ends = worst(stage, *signal)
+    ends = worst(stage, *signal, rule)
     bits = rng.choice([8, 8, 8, 10, 12, 16, 16, 24, 32, rng.randint(1, 16)])
     bits = max(bits, 2) if middle else bits
     table = random_target(rng, bits, ends[0] < 0 if often(rng, 0.8) else often(rng, 0.5), middle)
@@ -188,7 +189,8 @@ def add_targets(rng: random.Random, tables: Tables) -> None:
         signal = low - pedestal, high - pedestal
         frac = int(table.get("frac", frac))
     # The last stage was read with the input's frac before it; only the difference matters.
-    table, register = chosen_target(rng, contract.stages[-1], signal, frac, middle=False)
+    stage, rule = contract.stages[-1], contract.registers
+    table, register = chosen_target(rng, stage, signal, frac, middle=False, rule=rule)
     if "frac" not in table and frac != contract.source.frac:
         table["frac"] = str(frac)
     if exact:
@@ -241,10 +243,13 @@ def drawn_spec(rng: random.Random, name: str) -> str:
     bits, signed = int(tables["input"]["bits"]), tables["input"].get("signed") == "true"
     if tables["border"].get("mode", quoted("constant")) == quoted("constant") and often(rng, 0.5):
         tables["border"]["value"] = str(random_code(rng, *limits(bits, signed)))
-    if add_kernel(rng, tables) and often(rng, 0.75):
+    paired = add_kernel(rng, tables)
+    if paired and often(rng, 0.75):
         tables["intermediate"] = {}
         if often(rng, 0.5):
             tables["intermediate"]["first"] = quoted(rng.choice(["vertical", "horizontal"]))
+    if not paired and "pinned" not in tables["coefficient"] and often(rng, 0.25):
+        add_registers(rng, tables)
     try:
         add_targets(rng, tables)
     except oracle.ContradictionError:

@@ -66,8 +66,11 @@ def test_functions_are_short() -> None:
     assert median(n for n, _, _ in sizes) < 10
 
 
+ORACLE = ("oracle.py", "oracle_reading.py", "oracle_registers.py", "oracle_words.py")
+
+
 def test_the_oracle_shares_nothing_with_the_package() -> None:
-    for name in ("oracle.py", "oracle_reading.py", "gainfit.py", "randomspecs.py"):
+    for name in (*ORACLE, "gainfit.py", "randomspecs.py", "randomregisters.py"):
         assert list(imported_rooms(ROOT / "tests" / name)) == []
 
 

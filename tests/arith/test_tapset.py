@@ -6,7 +6,14 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from guardbit.arith.tapset import EmptySetError, corner_loadings, is_exact, is_member, range_of
+from guardbit.arith.tapset import (
+    EmptySetError,
+    corner_loadings,
+    extreme_loading,
+    is_exact,
+    is_member,
+    range_of,
+)
 from guardbit.model.filter import TapSet
 from guardbit.model.sizing import Interval
 
@@ -55,6 +62,11 @@ def test_ranges_are_those_of_all_loadings(s: TapSet, data: st.DataObject) -> Non
     greatest = max(sum(e[1] for e in each) for each in ends)
     assert is_exact(s)
     assert range_of(s, inside, Interval(low, high)) == Interval(least, greatest)
+    for is_greatest, end in ((False, least), (True, greatest)):
+        taps = extreme_loading(s, inside, Interval(low, high), greatest=is_greatest)
+        assert taps in legal
+        pick = max if is_greatest else min
+        assert sum(pick(taps[i] * low, taps[i] * high) for i in inside) == end
 
 
 @given(sets())

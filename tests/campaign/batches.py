@@ -26,6 +26,7 @@ from guardbit.arith.words import format_range
 from guardbit.build.compilation import BuildError
 from guardbit.build.compiler import find_compiler
 from guardbit.build.library import compile_library
+from guardbit.model.enums import Outside
 from guardbit.model.filter import Filter
 from guardbit.model.finding import SpecError
 from guardbit.model.routine import Call, Codes, Outcome
@@ -60,6 +61,20 @@ class Subject:
     contract: oracle.Contract
     made: packaged.Made
     images: list[oracle.Image]
+    taps: oracle.Integers | None = None
+
+    @property
+    def filter(self) -> Filter:
+        """The contract with the taps loaded."""
+        f = self.made.sizing.filter
+        found = f if self.taps is None else packaged.with_taps(f, self.taps)
+        assert found is not None, "the package refuses taps that the oracle allows"
+        return found
+
+    def call(self, image: oracle.Image) -> Call:
+        """The call of the compiled C."""
+        taps = None if self.taps is None else packaged.cells_of(self.taps)
+        return Call(packaged.codes(image), shape(self, image), taps=taps)
 
 
 def subjects(
@@ -90,6 +105,11 @@ def subjects(
             continue
         images = list(islice(randomspecs.frames(rng, contract), frames))
         yield Subject(text, contract, made, images)
+        if contract.registers is not None and contract.taps is not None:
+            tally.counts["specs with registers"] += 1
+            taps = randomspecs.random_loading(rng, contract.registers, contract.taps)
+            other = oracle.load(text, taps=taps)
+            yield Subject(text, other, made, images, taps)
 
 
 def batch(seed: int, frames: int, specs: int = BATCH) -> Tally:
@@ -99,13 +119,9 @@ def batch(seed: int, frames: int, specs: int = BATCH) -> Tally:
     chosen = list(subjects(rng, f"s{seed}", frames, specs, tally))
     folder = Path(tempfile.mkdtemp(prefix="guardbit-campaign-"))
     try:
-        routines = [s.made.emission.routine for s in chosen]
+        routines = list(dict.fromkeys(s.made.emission.routine for s in chosen))
         shared = compile_library(find_compiler(), routines, (), folder)
-        tasks = [
-            (s.made.emission.routine, Call(packaged.codes(image), shape(s, image)))
-            for s in chosen
-            for image in s.images
-        ]
+        tasks = [(s.made.emission.routine, s.call(image)) for s in chosen for image in s.images]
         outcomes = iter(shared.run(tasks))
         for s in chosen:
             judge(s, [next(outcomes) for _ in s.images], tally)
@@ -129,12 +145,12 @@ def shape(s: Subject, image: oracle.Image) -> tuple[int, int]:
 
 def judge(s: Subject, outcomes: list[Outcome], tally: Tally) -> None:
     """Compare all frames of a spec."""
-    f = s.made.sizing.filter
+    f = s.filter
     shown: set[tuple[int, int, int]] = set()
     for image, outcome in zip(s.images, outcomes, strict=True):
         tally.counts["frames"] += 1
         for complaint in compare(s, image, outcome, tally):
-            tally.mismatches.append(f"{complaint}\n{image}\n{s.text}")
+            tally.mismatches.append(f"{complaint}\n{image}\n{s.taps}\n{s.text}")
         shown |= noticed(f, image)
     taps = [
         (i, j) for i, p in enumerate(f.passes) for j, t in enumerate(p.kernel.terms) if t.integer
@@ -145,7 +161,7 @@ def judge(s: Subject, outcomes: list[Outcome], tally: Tally) -> None:
 
 def compare(s: Subject, image: oracle.Image, outcome: Outcome, tally: Tally) -> Iterator[str]:
     """Yield what differs on one frame."""
-    f = s.made.sizing.filter
+    f = s.filter
     frame = packaged.codes(image)
     if outcome.harm is not None:
         yield f"the C did harm: {outcome.harm} {outcome.detail}"
@@ -172,12 +188,19 @@ def compare(s: Subject, image: oracle.Image, outcome: Outcome, tally: Tally) -> 
     tally.counts["outputs inside"] += int(
         np.count_nonzero((response.output > to.low) & (response.output < to.high))
     )
+    held = s.made.sizing.registers[-1].held
+    finals = response.accumulators[-1]
+    legal = f.outside is not Outside.UNDEFINED or bool(
+        np.all((frame >= f.input.low) & (frame <= f.input.high))
+    )
+    if finals.size and legal and not held.low <= finals.min() <= finals.max() <= held.high:
+        yield f"sums leave what the sizing says, {held}"
     yield from by_scipy(s, frame, response.accumulators[-1], tally)
 
 
 def by_scipy(s: Subject, frame: Codes, sums: object, tally: Tally) -> Iterator[str]:
     """Yield a complaint if SciPy's convolution gives other sums."""
-    f = s.made.sizing.filter
+    f = s.filter
     saturates = tuple(
         p.accumulator.overflow.value == "saturate"
         and not contains(format_range(r.bits, r.signed), r.partial)

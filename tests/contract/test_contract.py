@@ -6,7 +6,13 @@ from typing import Any
 
 import pytest
 
-from implementations import Implementation, RefusedError, RejectedError, each_implementation
+from implementations import (
+    IllegalTapsError,
+    Implementation,
+    RefusedError,
+    RejectedError,
+    each_implementation,
+)
 
 CASES = Path(__file__).parent / "cases"
 GROUPS = {
@@ -17,6 +23,7 @@ GROUPS = {
     "convolution",
     "extents",
     "pixels",
+    "registers",
     "requantiser",
     "two_passes",
 }
@@ -30,6 +37,8 @@ KEYS = {
     "accumulator",
     "refused",
     "rejected",
+    "taps",
+    "illegal",
 }
 ONE_PIXEL = [[[0]]]
 
@@ -42,7 +51,9 @@ def read_group(path: Path) -> list[dict[str, Any]]:
     assert cases, f"{path.name} holds no case"
     for case in cases:
         assert {"title", "clause", "source", "spec"} <= set(case) <= KEYS, case.get("title")
-        assert set(case) & {"output", "accumulator", "refused", "rejected"}, case["title"]
+        assert set(case) & {"output", "accumulator", "refused", "rejected", "illegal"}, case[
+            "title"
+        ]
     return cases
 
 
@@ -75,9 +86,14 @@ def test_contract(case: dict[str, Any], implementation: Implementation) -> None:
     image = pixels(case["image"]) if "image" in case else ONE_PIXEL
     if case.get("refused") or case.get("rejected"):
         with pytest.raises(RefusedError if case.get("refused") else RejectedError):
-            implementation(case["spec"], image)
+            implementation(case["spec"], image, None)
         return
-    output, accumulator = implementation(case["spec"], image)
+    taps = case.get("taps")
+    if case.get("illegal"):
+        with pytest.raises(IllegalTapsError):
+            implementation(case["spec"], image, taps)
+        return
+    output, accumulator = implementation(case["spec"], image, taps)
     if "output" in case:
         assert output == pixels(case["output"])
     if "accumulator" in case and accumulator is not None:

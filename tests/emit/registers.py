@@ -3,15 +3,13 @@
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from fractions import Fraction
-from itertools import accumulate
 from pathlib import Path
 
-from guardbit.arith.tapset import is_member, range_of
+from guardbit.arith.tapset import is_member
 from guardbit.fit.resolve import resolve
 from guardbit.model.enums import BorderMode, Operation
 from guardbit.model.filter import Filter, TapSet, Term
-from guardbit.model.sizing import Interval, RegisterSizing, Sizing
-from guardbit.plan.evaluate import start_value
+from guardbit.model.sizing import Sizing
 from guardbit.sizing.analyse import analyse
 from guardbit.spec.reader import parse_spec
 from guardbit.verify.loadings import legal_loadings, nominal
@@ -132,7 +130,7 @@ def sized(name: str, case: Loadable | None = None) -> Sizing:
     terms = _terms(f, case)
     registers = _registers(f, case, terms)
     kernel = replace(only.kernel, terms=terms, registers=registers)
-    return _over_the_set(analyse(replace(f, passes=(replace(only, kernel=kernel),))))
+    return analyse(replace(f, passes=(replace(only, kernel=kernel),)))
 
 
 def _tables(name: str, case: Loadable) -> tuple[str, str]:
@@ -196,27 +194,6 @@ def _registers(f: Filter, case: Loadable, terms: tuple[Term, ...]) -> TapSet:
     )
     assert is_member(made, [t.integer for t in terms])
     return made
-
-
-def _over_the_set(sizing: Sizing) -> Sizing:
-    """The sizing with its sums widened to those of all legal taps, one sum at a time."""
-    (register,) = sizing.registers
-    return replace(sizing, registers=(_widened(sizing.filter, register),))
-
-
-def _widened(f: Filter, register: RegisterSizing) -> RegisterSizing:
-    s = f.passes[0].kernel.registers
-    assert s is not None
-    source = f.input
-    codes = (source.low, source.high, f.border.value)
-    pixels = Interval(min(codes) - source.pedestal, max(codes) - source.pedestal)
-    start = start_value(f.passes[0])
-    numbers = [(n,) for n in range(len(s.cells))]
-    sums = [range_of(s, some, pixels) for some in accumulate(numbers)]
-    ends = [register.partial, *(Interval(start + i.low, start + i.high) for i in sums)]
-    partial = Interval(min(e.low for e in ends), max(e.high for e in ends))
-    final = Interval(min(register.final.low, ends[-1].low), max(register.final.high, ends[-1].high))
-    return replace(register, partial=partial, final=final)
 
 
 def loads(f: Filter, most: int = 5) -> Iterator[tuple[int, ...]]:

@@ -10,7 +10,7 @@ import pytest
 from guardbit.fit.resolve import resolve
 from guardbit.model.enums import Container, FitRule, Rounding
 from guardbit.model.finding import Finding, SpecError
-from guardbit.model.spec import Auto, Pinned, Spec, Sum
+from guardbit.model.spec import Auto, Pinned, Registers, Spec, Sum
 from guardbit.report.words_fit import WORDS
 
 from .specs import EXACT, GAIN, PRELOADED, spec
@@ -19,6 +19,12 @@ AUTO = Auto.AUTO
 RESPONSE = {"fit": FitRule.RESPONSE, "bits": 8}
 PINNED = Pinned(((1, 2),), None, None)
 VECTORS: dict[str, Any] = {"column": [1, 2], "row": [3, 4]}
+
+
+def registered(
+    taps: list[list[int | str]], registers: Registers, **coefficient: tuple[int] | int
+) -> Spec:
+    return spec(taps, coefficient={"frac": (0,), "registers": registers} | coefficient)
 
 
 def findings(made: Spec) -> tuple[Finding, ...]:
@@ -207,6 +213,37 @@ CASES: list[tuple[str, Spec, str, dict[str, Any]]] = [
         spec(**VECTORS, intermediate={"bits": 4, "pedestal": 8}),
         "intermediate.pedestal",
         {"greatest": 7, "table": "intermediate"},
+    ),
+    (
+        "nominal-outside-limits",
+        registered([[1, 9]], Registers(((0, 0),), ((9, 8),), None, None, ())),
+        "coefficient.registers",
+        {"tap": "taps[0][1]", "integer": 9, "least": 0, "greatest": 8},
+    ),
+    (
+        "nominal-without-register",
+        # 1/8 is fitted to 0, which its register holds
+        registered([["1/8", 9]], Registers(((0, 0),), ((0, 9),), None, None, ()), bits=8),
+        "coefficient.registers",
+        {"tap": "taps[0][0]", "ideal": "1/8"},
+    ),
+    (
+        "nominal-sum",
+        registered([[1, 9]], Registers(((0, 0),), ((9, 9),), 9, None, ())),
+        "coefficient.registers",
+        {"got": 10, "sum": 9},
+    ),
+    (
+        "nominal-magnitudes",
+        registered([[1, -9]], Registers(((-9, -9),), ((9, 9),), -8, 9, ())),
+        "coefficient.registers",
+        {"got": 10, "magnitudes": 9},
+    ),
+    (
+        "nominal-not-listed",
+        registered([[1, 9]], Registers(((1, 1),), ((9, 9),), None, None, (((1, 1),), ((9, 9),)))),
+        "coefficient.registers",
+        {"taps": "[[1, 9]]"},
     ),
     ("range-reversed", spec([[1]], output={"range": (9, 3)}), "output.range", {"least": 9}),
     (

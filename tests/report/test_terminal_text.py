@@ -7,6 +7,7 @@ import pytest
 
 from guardbit.model.certificate import Digest, RungResult
 from guardbit.model.decimals import lower, signed, upper
+from guardbit.model.filter import TapSet
 from guardbit.model.finding import Place, finding
 from guardbit.model.sizing import Interval, Sizing
 from guardbit.report.glossary import GLOSSARY, meaning
@@ -54,6 +55,18 @@ def test_size_on_a_terminal(sizing: Sizing, snapshot: Snapshot) -> None:
 
 def test_size_of_two_passes(sizing: Sizing, snapshot: Snapshot) -> None:
     snapshot("size_two_passes.txt", size_text(PIPE, _two_passes(sizing)))
+
+
+def test_size_of_taps_that_are_loaded(sizing: Sizing) -> None:
+    (only,) = sizing.filter.passes
+    terms = only.kernel.terms
+    count = len(terms)
+    held = TapSet(count, tuple(range(count)), (-9,) * count, (99,) * count, None, None, ())
+    kernel = replace(only.kernel, registers=held)
+    filter_ = replace(sizing.filter, passes=(replace(only, kernel=kernel),))
+    text = size_text(PIPE, replace(sizing, filter=filter_))
+    assert f"{count} taps loaded in" in text
+    assert "of the spec's own kernel" in text and "own kernel" not in size_text(PIPE, sizing)
 
 
 def test_emit(sizing: Sizing, snapshot: Snapshot) -> None:

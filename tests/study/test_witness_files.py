@@ -10,6 +10,7 @@ import pytest
 import packaged
 from guardbit.arith.borders import positions
 from guardbit.files.images import parse_image
+from guardbit.model.filter import Filter, loaded, registers_of
 from guardbit.model.routine import Call
 from guardbit.model.sizing import Sizing
 from guardbit.model.vectors import Codes
@@ -52,6 +53,13 @@ def place(sizing: Sizing, entry: dict[str, Any], frame: Codes) -> tuple[int, int
     return (rows.index(y), columns.index(x)) if y in rows and x in columns else None
 
 
+def with_taps(f: Filter, entry: dict[str, Any]) -> Filter:
+    """The filter with the taps loaded that an entry names, if it does."""
+    s = registers_of(f)
+    assert (s is None) == (entry["taps"] is None)
+    return f if s is None else loaded(f, [entry["taps"][cell] for cell in s.cells])
+
+
 def check(sizing: Sizing) -> dict[str, Any]:
     files = dict(witness_files(sizing))
     index, f = index_of(files), sizing.filter
@@ -60,7 +68,7 @@ def check(sizing: Sizing) -> dict[str, Any]:
         frame = parse_image(files[entry["file"]], entry["file"])
         assert frame.shape == (entry["height"], entry["width"], f.geometry.channels)
         assert f.input.low <= frame.min() <= frame.max() <= f.input.high
-        response, at = respond(f, frame), place(sizing, entry, frame)
+        response, at = respond(with_taps(f, entry), frame), place(sizing, entry, frame)
         assert entry["output"] == (None if at is None else int(response.output[at][0]))
         last = entry["register"] in ("accumulator", "output")
         if last and at is not None and entry["shows"] != "partial":
@@ -157,6 +165,17 @@ COMPILED = [
     ('[intermediate]\nbits = 5\noverflow = "wrap"\n[border]\nmode = "half-sample"\n',
      "column = [3, -2]\nrow = [1, -3, 1]\ndivisor = [1, 1]"),
 ]  # fmt: skip
+
+
+@pytest.mark.parametrize("overflow", ["saturate", "wrap"])
+def test_taps_that_are_to_be_loaded_are_named(overflow: str) -> None:
+    kernel = "taps = [[1, -4, 1], [0, 6, 0]]\ndivisor = 4"
+    rest = "[coefficient]\nregisters = { least = -9, greatest = [[3, 9, 1], [3, 8, 2]], sum = 4 }\n"
+    output = f"[output]\nbits = 6\noverflow = '{overflow}'\n"
+    index = check(small(kernel, "bits = 4", rest + output))
+    assert any(entry["taps"] != [1, -4, 1, 0, 6, 0] for entry in index["frames"])
+    for entry in index["frames"]:
+        assert sum(entry["taps"]) == 4 and len(entry["taps"]) == 6
 
 
 def test_compiled_c_gives_what_the_index_says() -> None:

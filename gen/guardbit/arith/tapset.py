@@ -11,6 +11,7 @@ difference. Every condition is then an interval of P for each N.
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,7 +20,8 @@ from guardbit.arith.intervals import scale
 from guardbit.model.filter import TapSet
 from guardbit.model.sizing import Interval
 
-# Negative parts that are gone through one by one, and steps of the knapsack.
+# Negative parts that are gone through one by one; and how often, for the first 1, 2, 3... of the
+# taps, each a knapsack over all taps before if their limits differ.
 MOST_PARTS = 1 << 21
 MOST_WORK = 1 << 27
 
@@ -56,11 +58,25 @@ def range_of(s: TapSet, indices: Sequence[int], pixels: Interval) -> Interval:
     return Interval(-_greatest(s, inside, mirrored).value, _greatest(s, inside, pixels).value)
 
 
+def extreme_loading(
+    s: TapSet, indices: Sequence[int], pixels: Interval, *, greatest: bool
+) -> tuple[int, ...]:
+    """Return a legal loading that attains an end of `range_of`, where that is exact.
+
+    Raises EmptySetError.
+    """
+    inside = sorted(set(indices))
+    signal = pixels if greatest else Interval(-pixels.high, -pixels.low)
+    if s.kernels:
+        return max(s.kernels, key=lambda kernel: sum(scale(signal, kernel[i]).high for i in inside))
+    return _loading(s, _greatest(s, inside, signal))
+
+
 def is_exact(s: TapSet) -> bool:
     """Return whether ranges over the set are exact rather than bounds."""
     negative = sum(max(-low, 0) for low in s.least)
     mixed = {(low, high) for low, high in zip(s.least, s.greatest, strict=True) if low < 0 < high}
-    work = negative * len(s.least) if len(mixed) > 1 else negative
+    work = negative * len(s.least) ** (2 if len(mixed) > 1 else 1)
     return bool(s.kernels) or (negative <= MOST_PARTS and work <= MOST_WORK)
 
 
@@ -191,24 +207,50 @@ def _greatest(s: TapSet, indices: Sequence[int], pixels: Interval) -> _Best:
     if not legal.any():
         raise EmptySetError
     added = top if pixels.high >= 0 else bottom
-    value = pixels.high * added.astype(object) - pixels.low * parts.astype(object)
-    at = max(np.flatnonzero(legal).tolist(), key=lambda i: value[i])
+    choices = np.flatnonzero(legal)
+    value = _values(pixels, added[choices], parts[choices])
+    best = int(np.argmax(value))
+    at = int(choices[best])
     fixed = pixels.high * here.positive - pixels.low * here.negative
-    return _Best(int(value[at]) + fixed, inside, int(added[at]), int(parts[at]))
+    return _Best(int(value[best]) + fixed, inside, int(added[at]), int(parts[at]))
+
+
+def _values(
+    pixels: Interval, positive: NDArray[np.int64], negative: NDArray[np.int64]
+) -> NDArray[Any]:
+    """Return the sums that the parts make with pixels at the ends that suit them."""
+    widest = max(abs(pixels.low), abs(pixels.high))
+    safe = widest * (int(positive.max()) + int(negative.max())) < _NEVER
+    kind = np.dtype(np.int64 if safe else object)
+    both: NDArray[Any] = pixels.high * positive.astype(kind) - pixels.low * negative.astype(kind)
+    return both
 
 
 def _loading(s: TapSet, best: _Best) -> tuple[int, ...]:
-    """Return a legal loading with the parts of `best`, of the sum of all taps."""
+    """Return a legal loading whose taps inside have the parts of `best`."""
     negative = _negative_taps(s, best)
-    more, less = best.positive, best.negative
+    inside = set(best.inside)
+    room = {True: [best.positive, best.negative], False: _completion(s, best)}
     taps = []
     for i, (low, high) in enumerate(zip(s.least, s.greatest, strict=True)):
-        tap = min(max(low, 0), high)
-        up = min(high - tap, more) if i not in negative else 0
-        down = min(tap - low, less) if i in negative or high <= 0 else 0
+        left, tap = room[i in inside], min(max(low, 0), high)
+        down_only = i in negative
+        up = 0 if down_only else min(high - tap, left[0])
+        may_sink = down_only or high <= 0 or i not in inside
+        down = min(tap - low, left[1]) if may_sink else 0
+        left[0], left[1] = left[0] - up, left[1] - down
         taps.append(tap + up - down)
-        more, less = more - up, less - down
     return tuple(taps)
+
+
+def _completion(s: TapSet, best: _Best) -> list[int]:
+    """Return what the taps that are not inside add to both parts, one of them nothing."""
+    if s.sum is None:
+        return [0, 0]
+    here = _Side.of(s, best.inside)
+    there = _Side.of(s, [i for i in range(len(s.least)) if i not in set(best.inside)])
+    away = s.sum - (here.forced + best.positive - best.negative) - there.forced
+    return [max(away, 0), max(-away, 0)]
 
 
 def _negative_taps(s: TapSet, best: _Best) -> set[int]:

@@ -1,6 +1,6 @@
 """Where taps read and where their contributions land: terms and axes."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from fractions import Fraction
 
 from guardbit.fit.nearest import Integers
@@ -57,23 +57,27 @@ def _offset(spec: Spec, axis: int, k: int) -> int:
 def terms(
     spec: Spec, ideal: Matrix, integers: Integers, axes: tuple[int, ...] = (0, 1)
 ) -> tuple[Term, ...]:
-    """Return the taps that are not zero twice, in raster order of the offset they read.
+    """Return the taps that are not zero twice, in raster order of the offset they read."""
+    found = (term for term in placed(spec, ideal, integers, axes) if term.ideal or term.integer)
+    return tuple(sorted(found, key=lambda term: (term.dy, term.dx)))
+
+
+def placed(
+    spec: Spec, ideal: Matrix, integers: Integers, axes: tuple[int, ...] = (0, 1)
+) -> Iterator[Term]:
+    """Yield all taps of a matrix, in raster order of the matrix, with the offset each reads.
 
     `axes`: the directions in which the matrix extends; (0,) for a column and (1,) for a row,
     whose offsets in the other direction are zero.
     """
     start = origin(spec)
-    found = (
-        Term(
+    for y, x, tap, integer in _cells(ideal, integers):
+        yield Term(
             dy=_offset(spec, 0, y - start[0]) if 0 in axes else 0,
             dx=_offset(spec, 1, x - start[1]) if 1 in axes else 0,
             ideal=tap,
             integer=integer,
         )
-        for y, x, tap, integer in _cells(ideal, integers)
-        if tap or integer
-    )
-    return tuple(sorted(found, key=lambda term: (term.dy, term.dx)))
 
 
 def _cells(ideal: Matrix, integers: Integers) -> Iterable[tuple[int, int, Fraction, int]]:

@@ -8,6 +8,7 @@ from guardbit.fit.factors import in_pairs
 from guardbit.fit.geometry import terms
 from guardbit.fit.nearest import width
 from guardbit.fit.places import place
+from guardbit.fit.registers import loadable
 from guardbit.model.enums import First, FitRule, Overflow, Preload, Rounding, Scale
 from guardbit.model.filter import Accumulator, Kernel, Pass, PixelFormat, Requantiser
 from guardbit.model.finding import Finding, finding
@@ -74,8 +75,12 @@ def _kernel(spec: Spec, fitted: Fitted, axes: tuple[int, ...]) -> Kernel:
     rule = FitRule.NEAREST if spec.coefficient.scale is Scale.EXACT else spec.coefficient.fit
     ideal_sum = sum((tap for line in fitted.ideal for tap in line), Fraction(0))
     whole = sum(tap for line in fitted.integers for tap in line)
+    registers = spec.coefficient.registers
+    kept, held = terms(spec, fitted.ideal, fitted.integers, axes), None
+    if registers is not None:
+        kept, held = loadable(spec, registers, fitted)
     return Kernel(
-        terms=terms(spec, fitted.ideal, fitted.integers, axes),
+        terms=kept,
         scale=spec.coefficient.scale,
         frac=fitted.frac,
         divisor=fitted.divisor,
@@ -83,6 +88,7 @@ def _kernel(spec: Spec, fitted: Fitted, axes: tuple[int, ...]) -> Kernel:
         signed=spec.coefficient.signed,
         rule=None if pinned else rule,
         residual=whole - Fraction(2) ** fitted.frac * fitted.divisor * ideal_sum,
+        registers=held,
     )
 
 

@@ -6,6 +6,7 @@ from guardbit.fit.formats import border_value, formats
 from guardbit.fit.geometry import geometry
 from guardbit.fit.open import open_findings
 from guardbit.fit.passes import passes, preload_findings
+from guardbit.fit.registers import nominal_findings, with_register_bits
 from guardbit.model.filter import Border, Filter
 from guardbit.model.finding import Finding, SpecError
 from guardbit.model.spec import Spec
@@ -21,6 +22,7 @@ def resolve(spec: Spec) -> Filter:
     """
     if found := open_findings(spec):
         raise SpecError(*found)
+    spec = with_register_bits(spec)
     pixels, format_findings = formats(spec)
     value, border_findings = border_value(spec)
     parts, part_findings = factors(spec)
@@ -34,6 +36,7 @@ def resolve(spec: Spec) -> Filter:
         *format_findings,
         *border_findings,
         *preload_findings(spec, made),
+        *(found for each in fitted for found in nominal_findings(spec, each)),
     )
     if findings:
         raise SpecError(*sorted(findings, key=_line))

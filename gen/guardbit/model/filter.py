@@ -218,6 +218,11 @@ def loaded(f: Filter, taps: Sequence[int]) -> Filter:
     return replace(f, passes=(replace(only, kernel=changed),))
 
 
+def holding(f: Filter, taps: Sequence[int] | None) -> Filter:
+    """Return the filter with these taps loaded; None: with its own."""
+    return f if taps is None else loaded(f, taps)
+
+
 def raster(s: TapSet, taps: Sequence[int]) -> tuple[int, ...]:
     """Return a loading, given in the order of the terms, as all cells of the box."""
     cells = [0] * s.count

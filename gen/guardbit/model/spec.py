@@ -87,6 +87,21 @@ class Pinned:
 
 
 @dataclass(frozen=True)
+class Registers:
+    """The integer taps that may be loaded at run time, in the kernel's rows and columns.
+
+    Each tap is in least..greatest; all add up to `sum`, and their magnitudes to `magnitudes` at
+    most (None: to anything). With `kernels` it is one of these, whose ends the limits are.
+    """
+
+    least: tuple[tuple[int, ...], ...]
+    greatest: tuple[tuple[int, ...], ...]
+    sum: int | None
+    magnitudes: int | None
+    kernels: tuple[tuple[tuple[int, ...], ...], ...]
+
+
+@dataclass(frozen=True)
 class CoefficientTable:
     """`frac` has one entry, or two for a pair [column's, row's]."""
 
@@ -96,6 +111,7 @@ class CoefficientTable:
     fit: FitRule
     scale: Scale
     pinned: Pinned | None
+    registers: Registers | None = None
 
 
 @dataclass(frozen=True)

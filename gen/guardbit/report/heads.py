@@ -5,7 +5,7 @@ from rich.padding import Padding
 from rich.text import Text
 
 from guardbit.model.enums import BorderMode, Outside
-from guardbit.model.filter import Axis, Filter, Kernel, PixelFormat
+from guardbit.model.filter import Axis, Filter, Kernel, PixelFormat, registers_of
 from guardbit.report.look import Look
 from guardbit.report.text import ascii_shown, plural, shown
 
@@ -62,12 +62,13 @@ def _taps(filter_: Filter) -> str:
     counts = [_live(each.kernel) for each in filter_.passes]
     box = f"{_length(filter_.geometry.rows)}x{_length(filter_.geometry.columns)}"
     if len(counts) == 1:
-        return f"{plural(counts[0], 'tap')} in {box}"
+        loaded = " loaded" if registers_of(filter_) is not None else ""
+        return f"{plural(counts[0], 'tap')}{loaded} in {box}"
     return f"{counts[0]} then {plural(counts[1], 'tap')} in {box}"
 
 
 def _live(kernel: Kernel) -> int:
-    return sum(term.integer != 0 for term in kernel.terms)
+    return len(kernel.live)
 
 
 def _length(axis: Axis) -> int:

@@ -7,7 +7,7 @@ from rich.table import Table
 from rich.text import Text
 
 from guardbit.model.decimals import lower, nearest, signed, upper
-from guardbit.model.filter import Pass, Requantiser
+from guardbit.model.filter import Pass, Requantiser, registers_of
 from guardbit.model.sizing import (
     DcGain,
     ErrorBound,
@@ -24,6 +24,7 @@ from guardbit.report.text import interval, plural, ratio
 
 _LABELS = 22
 _BAR = 24
+_OWN = "    (of the spec's own kernel: others that are loaded have no ideal to differ from)"
 _CONDITION = "    (the bound in all: for inputs that make no register wrap or saturate)"
 
 
@@ -41,6 +42,7 @@ def size_text(look: Look, sizing: Sizing, orders: Sequence[TapOrder] = ()) -> st
         _error(look, sizing.error),
         *([Text(_CONDITION)] if sizing.error.assumes_no_wrap else []),
         *([Text(), _gain(sizing.error.gain)] if sizing.error.gain is not None else []),
+        *([Text(_OWN)] if registers_of(sizing.filter) is not None else []),
     )
 
 

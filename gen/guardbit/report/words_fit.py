@@ -65,6 +65,31 @@ WORDS: dict[str, tuple[str, str]] = {
         'With scale = "exact" the taps themselves are the integers; there is nothing to pin.',
         'Remove coefficient.pinned, or set coefficient.scale to "binary".',
     ),
+    "nominal-outside-limits": (
+        "The kernel's own taps must be ones that may be loaded, but tap {tap} becomes {integer}, "
+        "and its register's limits are {least}..{greatest}.",
+        "Widen the limits in coefficient.registers, or change kernel or coefficient.frac.",
+    ),
+    "nominal-without-register": (
+        "Tap {tap} is ideally {ideal}, and coefficient.registers lets nothing but 0 be loaded "
+        "there.",
+        "Allow another number there, or make the tap 0.",
+    ),
+    "nominal-sum": (
+        "The kernel's own taps must be ones that may be loaded, but they become integers that "
+        "sum to {got}, and coefficient.registers asks for {sum}.",
+        'Set its sum to {got}, or look at coefficient.frac and fit = "gain", which fix the sum.',
+    ),
+    "nominal-magnitudes": (
+        "The kernel's own taps must be ones that may be loaded, but their magnitudes sum to "
+        "{got}, and coefficient.registers allows {magnitudes}.",
+        "Raise its magnitudes, or change kernel or coefficient.frac.",
+    ),
+    "nominal-not-listed": (
+        "The kernel's own taps must be ones that may be loaded, but they become {taps}, which "
+        "coefficient.registers does not list.",
+        "Add them to its kernels, or change kernel or coefficient.frac.",
+    ),
     "response-not-pinned": (
         'fit = "response" is a search, and its result is not in the spec.',
         'Run "guardbit size --pin" on the spec: it searches and writes coefficient.pinned; or '

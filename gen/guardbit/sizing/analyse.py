@@ -3,9 +3,10 @@
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
-from guardbit.model.filter import Filter, Pass
+from guardbit.model.filter import Filter, Pass, registers_of
 from guardbit.model.sizing import RegisterSizing, RequantiserSizing, Sizing
 from guardbit.sizing.error.bound import error_bound
+from guardbit.sizing.loadable import loadable_sizing
 from guardbit.sizing.passes import (
     ACCUMULATOR,
     FIRST_ACCUMULATOR,
@@ -35,9 +36,12 @@ def analyse(f: Filter) -> Sizing:
     """Return the sizing of a filter; `Sizing.filter` has every accumulator width resolved.
 
     Ranges hold for legal codes. They are exact, with a frame that attains each end, unless
-    `exact` says otherwise. A width that "auto" resolves to may exceed 64 bits: `unmet` says so.
+    `exact` says otherwise. With coefficients that are loaded at run time they are over all that
+    may be loaded, and the error is the kernel's own. A width that "auto" resolves to may exceed
+    64 bits: `unmet` says so.
     """
-    return _sizing(f, measured(f))
+    s = registers_of(f)
+    return _sizing(f, measured(f)) if s is None else loadable_sizing(f, s)
 
 
 @dataclass(frozen=True)

@@ -33,7 +33,7 @@ class Holding:
         if self.turn is not None:
             return Held(shift(self.found.interval(False), -self.turn), self.found.exact)
         if self.showing and all(place.held.exact for place in self.showing):
-            return _hull(place.held for place in self.showing)
+            return hull_of(place.held for place in self.showing)
         bits, final = self.accumulator.bits, self.found.interval(False)
         assert bits is not None
         return Held(wrapped(final, bits, self.accumulator.signed), False)
@@ -95,7 +95,7 @@ class Holding:
     @cached_property
     def _clamped(self) -> Held:
         if self.showing:
-            return _hull(place.held for place in self.showing)
+            return hull_of(place.held for place in self.showing)
         row, column = apart(any_values(self.problem))
         return Held(self._place(row, column).held.range, False)
 
@@ -105,7 +105,7 @@ def _is_whole(line: Line) -> bool:
     return line.results is None or line.results.is_interior
 
 
-def _hull(parts: Iterable[Held]) -> Held:
+def hull_of(parts: Iterable[Held]) -> Held:
     """Return the range of all; exact if exact parts have both its ends."""
     items = list(parts)
     whole = hull(h.range for h in items)

@@ -13,7 +13,7 @@ from itertools import product
 from math import prod
 
 from guardbit.arith.intervals import add, hull, scale
-from guardbit.model.filter import Filter
+from guardbit.model.filter import Filter, registers_of
 from guardbit.model.sizing import End, Interval, TapOrder
 from guardbit.sizing.analyse import measured
 from guardbit.sizing.lines import Line
@@ -31,7 +31,12 @@ Taps = tuple[Tap, ...]
 
 
 def tap_orders(f: Filter) -> tuple[TapOrder, ...]:
-    """Return what the order of the taps costs each accumulator, in the order of the passes."""
+    """Return what the order of the taps costs each accumulator, in the order of the passes.
+
+    Nothing where taps are loaded at run time: each loading has a best order of its own.
+    """
+    if registers_of(f) is not None:
+        return ()
     return tuple(_tap_order(m.register) for m in measured(f))
 
 

@@ -7,7 +7,7 @@ from guardbit.arith.borders import read_index
 from guardbit.arith.rounding import requantise
 from guardbit.arith.words import clamp, format_range, wrap
 from guardbit.model.enums import Overflow
-from guardbit.model.filter import Accumulator, Axis, Filter, Pass
+from guardbit.model.filter import Accumulator, Axis, Filter, Pass, holding
 from guardbit.model.sizing import Witness
 from guardbit.sizing.passes import is_preloaded, start_value
 
@@ -23,9 +23,11 @@ class Outcome:
 def outcome(f: Filter, which: int, witness: Witness, overflow: Overflow) -> Outcome:
     """Return what pass number `which` makes of a witness's frame, at its position.
 
-    Its accumulator has its width and the policy given; `forbid` stands for no limit.
+    Its accumulator has its width and the policy given; `forbid` stands for no limit. Registers
+    of coefficients hold what the witness says.
     Registers of the filter have resolved widths.
     """
+    f = holding(f, witness.taps)
     p = f.passes[which]
     accumulator = replace(p.accumulator, overflow=overflow)
     held = ended(accumulator, start_value(p), _amounts(f, which, witness))

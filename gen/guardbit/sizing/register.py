@@ -50,16 +50,32 @@ def width(values: Interval, signed: bool) -> int:
     return max(needed, LEAST_BITS)
 
 
+@dataclass(frozen=True)
+class Weights:
+    """Of the taps of a register: the sum of their magnitudes, the greatest, and how many."""
+
+    total: int
+    greatest: int
+    count: int
+
+
 def sized(
-    register: Register, exact: bool, witnesses: Sequence[Witness], held_witnesses: Sequence[Witness]
+    register: Register,
+    exact: bool,
+    witnesses: Sequence[Witness],
+    held_witnesses: Sequence[Witness],
+    weights: Weights | None = None,
 ) -> RegisterSizing:
-    """Return the sizing of a register; `exact` says whether its pixels' range is."""
+    """Return the sizing of a register; `exact` says whether its pixels' range is.
+
+    `weights` are those of its taps; None: of the problem's.
+    """
     final, partial = register.found.interval(False), register.found.interval(True)
     accumulator = register.accumulator
     assert accumulator.bits is not None
     forbid, wrap = width(partial, accumulator.signed), width(final, accumulator.signed)
     wraps = accumulator.overflow is Overflow.WRAP
-    rule_l1, rule_count = textbook_rules(register)
+    rule_l1, rule_count = textbook_rules(register, weights or _weights(register.problem))
     return RegisterSizing(
         name=register.name,
         bits=accumulator.bits,
@@ -90,7 +106,12 @@ def _headroom(accumulator: Accumulator, worst: Interval) -> Fraction | None:
     return min(ratios, default=None)
 
 
-def textbook_rules(register: Register) -> tuple[int, int]:
+def _weights(problem: Problem) -> Weights:
+    taps = [abs(tap.coefficient) for tap in problem.taps]
+    return Weights(sum(taps), max(taps, default=0), len(taps))
+
+
+def textbook_rules(register: Register, weights: Weights) -> tuple[int, int]:
     """Return the widths that two rules of thumb give, which never fall short.
 
     The first is pixel bits + ceil(log2(sum of |coefficients|)), the second coefficient bits
@@ -101,11 +122,11 @@ def textbook_rules(register: Register) -> tuple[int, int]:
     problem = register.problem
     values = any_values(problem)
     pixel = max(abs(values.low), abs(values.high), 1)
-    weights = [abs(tap.coefficient) for tap in problem.taps]
+    total, greatest, count = weights.total, weights.greatest, weights.count
     sign = int(register.accumulator.signed or register.found.interval(True).low < 0)
     if problem.start:
-        weights.append(-(-problem.start // pixel))
-    total, greatest, count = sum(weights), max(weights, default=0), len(weights)
+        start = -(-problem.start // pixel)
+        total, greatest, count = total + start, max(greatest, start), count + 1
     by_sum = pixel.bit_length() + log2_up(total) + sign
     by_count = pixel.bit_length() + greatest.bit_length() + log2_up(count) + sign
     return max(by_sum, LEAST_BITS), max(by_count, LEAST_BITS)

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 from guardbit.arith.intervals import contains
 from guardbit.arith.words import bits_needed, format_range
 from guardbit.model.enums import Overflow
-from guardbit.model.filter import Filter, Pass
+from guardbit.model.filter import Filter, Kernel, Pass
 from guardbit.model.finding import Finding, Place, Value, finding
 from guardbit.model.sizing import End, Interval, RegisterSizing, RequantiserSizing, Sizing, Witness
 from guardbit.sizing.outcome import outcome
@@ -135,13 +135,17 @@ def _products(p: Pass, r: RegisterSizing, place: Place) -> Iterator[Finding]:
     """Yield a finding if a saturating accumulator would add a product of over 64 bits."""
     values = pixel_values(p.source)
     most = max(abs(values.low), abs(values.high))
-    for term in p.kernel.terms:
-        needed = bits_needed(-most * abs(term.integer), most * abs(term.integer), True)
+    for tap in _taps(p.kernel):
+        needed = bits_needed(-most * abs(tap), most * abs(tap), True)
         if needed is not None and needed > WIDEST:
-            yield finding(
-                "product-over-64", place, register=r.name, tap=term.integer, needed=needed
-            )
+            yield finding("product-over-64", place, register=r.name, tap=tap, needed=needed)
             return
+
+
+def _taps(kernel: Kernel) -> tuple[int, ...]:
+    """Return the taps, or the limits of those that are loaded."""
+    s = kernel.registers
+    return tuple(t.integer for t in kernel.terms) if s is None else (*s.least, *s.greatest)
 
 
 def _requantiser(

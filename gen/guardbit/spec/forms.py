@@ -6,6 +6,8 @@ from typing import TypeAlias
 
 BOX_LIMIT = 255
 TAP_LIMIT = 4096
+# no sum of as many taps of 32 bits is beyond
+SUM_LIMIT = TAP_LIMIT << 32
 SUMMARY_LIMIT = 200
 
 
@@ -203,6 +205,16 @@ class PinnedForm:
 
 
 @dataclass(frozen=True)
+class RegistersForm:
+    """A table of limits of taps and their sums, or of a list of kernels."""
+
+    wanted: str = (
+        "{ least = ..., greatest = ..., sum = ..., magnitudes = ... } with any of these, or "
+        "{ kernels = [...] }, all of whole numbers"
+    )
+
+
+@dataclass(frozen=True)
 class Reserved:
     """A place kept for a later version."""
 
@@ -229,5 +241,6 @@ Form: TypeAlias = (
     | Rows
     | Numbers
     | PinnedForm
+    | RegistersForm
     | Reserved
 )

@@ -36,6 +36,7 @@ from guardbit.spec.forms import (
     Numbers,
     PinnedForm,
     Positive,
+    RegistersForm,
     RelativePath,
     Reserved,
     Rows,
@@ -239,6 +240,21 @@ _COEFFICIENT = (
         "coefficient.pinned",
         PinnedForm(),
         "Integer coefficients that a search wrote here; they are used as they are.",
+    ),
+    Key(
+        "coefficient.registers",
+        RegistersForm(),
+        "Coefficients are given at each call, as integers, and may be any that this allows; the "
+        "kernel's own must be among them. For one pass, with a kernel fitted as one matrix.",
+        shown="none: the taps are fixed",
+        details=(
+            "least, greatest: limits of a tap, a number for all or rows of one each; left out, "
+            "those of the coefficient register.",
+            "sum: what all taps add up to; the gain then is the same for all that may be loaded.",
+            "magnitudes: the most that the magnitudes of all taps add up to.",
+            "kernels: a list of matrices of the kernel's shape, one of which is loaded.",
+            'With bits = "auto" the register is as wide as the limits need.',
+        ),
     ),
 )
 

@@ -2,6 +2,7 @@
 
 import hashlib
 from pathlib import Path
+from typing import TypeAlias
 
 from guardbit.files.reading import SPEC_LIMIT, decode, read_bytes, refusal
 from guardbit.model.enums import (
@@ -30,12 +31,14 @@ from guardbit.model.spec import (
     KernelTable,
     OutputTable,
     Pinned,
+    Registers,
     Spec,
 )
 from guardbit.spec.fitting import check_fitting, in_pairs, read_pinned
 from guardbit.spec.formats import check_formats, check_image
 from guardbit.spec.goal import check_goal, read_goal
 from guardbit.spec.kernel import Source, read_kernel
+from guardbit.spec.registers import read_registers
 from guardbit.spec.sheet import Sheet, read_sheet
 from guardbit.spec.toml import load
 
@@ -68,19 +71,22 @@ def _parse(data: bytes, path: str, folder: Path) -> Spec:
     check_formats(sheet)
     check_image(sheet, ideal)
     check_fitting(sheet, ideal)
-    pinned = read_pinned(sheet, ideal)
+    taps = (read_pinned(sheet, ideal), read_registers(sheet, ideal))
     check_goal(sheet, folder)
     if sheet.findings or source is None:
         raise SpecError(*sorted(sheet.findings, key=_by_place))
     digest = hashlib.sha256(data + source.content).hexdigest()
-    return _spec(sheet, source, pinned, path, digest)
+    return _spec(sheet, source, taps, path, digest)
 
 
 def _by_place(found: Finding) -> int:
     return found.place.line or 0
 
 
-def _spec(sheet: Sheet, source: Source, pinned: Pinned | None, path: str, digest: str) -> Spec:
+_Taps: TypeAlias = tuple[Pinned | None, Registers | None]
+
+
+def _spec(sheet: Sheet, source: Source, taps: _Taps, path: str, digest: str) -> Spec:
     return Spec(
         path=path,
         digest=digest,
@@ -92,7 +98,7 @@ def _spec(sheet: Sheet, source: Source, pinned: Pinned | None, path: str, digest
         ),
         kernel=_kernel(sheet, source),
         input=_input(sheet),
-        coefficient=_coefficient(sheet, pinned),
+        coefficient=_coefficient(sheet, *taps),
         intermediate=_intermediate(sheet) if "intermediate" in sheet.given else None,
         accumulator=_accumulator(sheet, "accumulator"),
         output=_output(sheet),
@@ -130,7 +136,9 @@ def _input(sheet: Sheet) -> InputTable:
     )
 
 
-def _coefficient(sheet: Sheet, pinned: Pinned | None) -> CoefficientTable:
+def _coefficient(
+    sheet: Sheet, pinned: Pinned | None, registers: Registers | None
+) -> CoefficientTable:
     return CoefficientTable(
         bits=sheet.width("coefficient.bits"),
         signed=sheet.get("coefficient.signed", bool),
@@ -138,6 +146,7 @@ def _coefficient(sheet: Sheet, pinned: Pinned | None) -> CoefficientTable:
         fit=sheet.get("coefficient.fit", FitRule),
         scale=sheet.get("coefficient.scale", Scale),
         pinned=pinned,
+        registers=registers,
     )
 
 

@@ -30,6 +30,7 @@ from guardbit.spec.forms import (
     PinnedForm,
     Positive,
     Rational,
+    RegistersForm,
     RelativePath,
     Rows,
     Size,
@@ -144,7 +145,7 @@ def _exact_form(form: Form, raw: object) -> object:
             return matrix(raw, form.wanted)
         case Numbers():
             return vector(raw, form.wanted)
-        case PinnedForm():
+        case PinnedForm() | RegistersForm():
             return raw
     raise TypeError(f"no conversion to {type(form).__name__}")
 

@@ -9,7 +9,7 @@ from guardbit.files.npy import npy_bytes
 from guardbit.files.pgm import MAXVAL_LIMIT, pgm_bytes
 from guardbit.model.canonical import dumps
 from guardbit.model.enums import Overflow
-from guardbit.model.filter import Filter
+from guardbit.model.filter import Filter, holding, raster, registers_of
 from guardbit.model.sizing import End, Interval, RegisterSizing, RequantiserSizing, Sizing, Witness
 from guardbit.model.vectors import Codes
 from guardbit.reference.run import respond
@@ -33,7 +33,8 @@ class FrameEntry:
     reached after `after` taps, at output position `position` (row, column; for a first pass,
     the position of the intermediate). `output` is the reference's code there, of the first
     channel; None: there is no output. `hidden` says why the output does not tell the value,
-    with the unit that hides it; None: it is not hidden.
+    with the unit that hides it; None: it is not hidden. `taps` are to be loaded meanwhile, row
+    by row of the kernel; None: coefficients are fixed.
     """
 
     file: str
@@ -47,6 +48,7 @@ class FrameEntry:
     width: int
     output: int | None
     hidden: str | None
+    taps: tuple[int, ...] | None = None
 
 
 @dataclass(frozen=True)
@@ -108,6 +110,7 @@ def _bytes(f: Filter, frame: Codes, name: str) -> bytes:
 
 def _entry(f: Filter, name: str, attained: Attained, frame: Codes) -> FrameEntry:
     w = attained.witness
+    s = registers_of(f)
     output = _output(f, w, frame)
     return FrameEntry(
         file=name,
@@ -121,6 +124,7 @@ def _entry(f: Filter, name: str, attained: Attained, frame: Codes) -> FrameEntry
         width=w.width,
         output=output,
         hidden=_hidden(f, attained, output),
+        taps=None if s is None or w.taps is None else raster(s, w.taps),
     )
 
 
@@ -131,7 +135,7 @@ def _output(f: Filter, w: Witness, frame: Codes) -> int | None:
     if w.position[0] not in rows or w.position[1] not in columns:
         return None
     at = rows.index(w.position[0]), columns.index(w.position[1])
-    return int(respond(f, frame).output[at][0])
+    return int(respond(holding(f, w.taps), frame).output[at][0])
 
 
 def _hidden(f: Filter, attained: Attained, output: int | None) -> str | None:
