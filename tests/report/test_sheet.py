@@ -74,3 +74,26 @@ def test_both_carry_the_cautions_and_the_sheet_has_a_canonical_form(made: Sheet)
     joined = " ".join(sheet_text(Look(), made).split())
     assert all(caution in joined and caution in sheet_markdown(made) for caution in CAUTIONS)
     assert '"practice"' in dumps(made)
+
+
+LOADED = """
+[filter]
+name = "loaded"
+[kernel]
+taps = [[1, 2, 1]]
+divisor = 4
+[coefficient]
+bits = 4
+frac = 2
+registers = { sum = 4 }
+[input]
+bits = 8
+"""
+
+
+def test_sheet_of_a_filter_whose_taps_are_loaded(snapshot: Snapshot) -> None:
+    """No tap order, no shared multiplier: what is loaded later may need each apart."""
+    made = sheet(analyse(resolve(parse_spec(LOADED, "loaded.toml", Path()))), {})
+    text = sheet_text(Look(), made)
+    assert "best tap order" not in text
+    snapshot("sheet_loaded.txt", text)

@@ -71,3 +71,16 @@ def test_two_passes_keep_rows_of_what_the_vertical_one_reads() -> None:
 def test_a_kernel_of_zeros_costs_nothing() -> None:
     (p,) = costs("[kernel]\ntaps = [[0, 0]]\n[input]\nbits = 8\n").passes
     assert (p.reads, p.multipliers, p.adders, p.signed_digit_adders, p.line_bits) == (0,) * 5
+
+
+def test_loaded_taps_need_a_multiplier_each_but_for_those_held_fast() -> None:
+    """The corners may be nothing but 0 and the middle nothing but 4, which is a shift."""
+    (p,) = costs(
+        "[kernel]\ntaps = [[0, 1, 0], [1, 4, 1], [0, 1, 0]]\n[input]\nbits = 8\n"
+        "[coefficient]\nbits = 5\n[coefficient.registers]\n"
+        "least = [[0, -9, 0], [-9, 4, -9], [0, -9, 0]]\n"
+        "greatest = [[0, 9, 0], [9, 4, 9], [0, 9, 0]]\n"
+    ).passes
+    assert (p.reads, p.multipliers, p.shifts, p.adders) == (5, 4, 1, 4)
+    assert (p.folded_multipliers, p.magnitudes, p.constant_bits) == (4, 5, 25)
+    assert (p.constants, p.signed_digit_adders) == (None, None)

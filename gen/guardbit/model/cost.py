@@ -14,7 +14,8 @@ class PassCost:
     ones of the taps, all that a store of coefficients with signs apart has to hold. `constants`:
     distinct odd factors of the magnitudes, 1 left out: the multiplier blocks that a fabric
     without multipliers needs. `signed_digit_adders`: adders in all where each tap is a sum of
-    shifted pixels in canonical signed digits. `constant_bits`: the coefficients as a table.
+    shifted pixels in canonical signed digits; both None where taps are loaded at run time, which
+    also share no multiplier. `constant_bits`: the coefficients as a table.
     `line_bits`: pixels that a raster stream has to keep for a pixel of width, in bits.
     """
 
@@ -25,8 +26,8 @@ class PassCost:
     adders: int
     folded_multipliers: int
     magnitudes: int
-    constants: int
-    signed_digit_adders: int
+    constants: int | None
+    signed_digit_adders: int | None
     constant_bits: int
     line_rows: int
     line_bits: int

@@ -19,6 +19,7 @@ from guardbit.model.decimals import (
     upper,
     upper_decibels,
 )
+from guardbit.model.filter import registers_of
 from guardbit.model.frequency import Frequency, Gain
 from guardbit.model.practice import Measured, MeasuredRounding, Narrowed, RegisterPractice
 from guardbit.model.sheet import Sheet
@@ -68,7 +69,7 @@ def blocks(sheet: Sheet) -> tuple[Block, ...]:
     made = [
         _registers(sizing.registers, sheet.orders),
         _requantisers(sheet),
-        _error(sizing.error),
+        _error(sizing.error, registers_of(sizing.filter) is not None),
         *_rounding(sizing.error.rounding, sheet.rounding),
         *_gain(sizing.error.gain),
         _response(sheet.frequency),
@@ -126,8 +127,9 @@ def _registers(registers: Sequence[RegisterSizing], orders: Sequence[TapOrder]) 
         ],
         "rule: sum of |h|": [plural(r.rule_l1, "bit") for r in registers],
         "rule: tap count": [plural(r.rule_count, "bit") for r in registers],
-        "best tap order": [order_text(order) for order in orders],
     }
+    if orders:
+        rows["best tap order"] = [order_text(order) for order in orders]
     return Block("register", tuple(r.name for r in registers), _rows(rows))
 
 
@@ -150,7 +152,7 @@ def _requantisers(sheet: Sheet) -> Block:
     return Block("requantiser", tuple(r.name for r in stages), _rows(rows))
 
 
-def _error(error: ErrorBound) -> Block:
+def _error(error: ErrorBound, is_loaded: bool) -> Block:
     rows = [(part.cause, *_ends(part.low, part.high)) for part in error.parts]
     rows.append(("bound in all", *_ends(error.low, error.high)))
     quiet = "for inputs that make no register wrap or saturate; " if error.assumes_no_wrap else ""
@@ -158,6 +160,8 @@ def _error(error: ErrorBound) -> Block:
     if error.overall is not None:
         rows.append(("for any input", *_ends(*error.overall)))
         notes.append(f"for any input: {_UNATTAINED}")
+    if is_loaded:
+        notes.append("of the spec's own kernel, as all below: others that are loaded have no ideal")
     return Block("error in LSB", ("least", "greatest"), tuple(rows), tuple(notes))
 
 
@@ -231,6 +235,10 @@ def _decibels(value: Fraction, frequency: Frequency) -> str:
     return f"{upper_decibels((value / reference) ** 2)} dB" if reference else _NOTHING
 
 
+def _if_fixed(count: int | None) -> str:
+    return _NOTHING if count is None else grouped(count)
+
+
 _COSTS: Sequence[tuple[str, Callable[[PassCost], str]]] = (
     ("reads", lambda p: grouped(p.reads)),
     ("multipliers", lambda p: grouped(p.multipliers)),
@@ -238,8 +246,8 @@ _COSTS: Sequence[tuple[str, Callable[[PassCost], str]]] = (
     ("adders", lambda p: grouped(p.adders)),
     ("multipliers, folded", lambda p: grouped(p.folded_multipliers)),
     ("magnitudes, distinct", lambda p: grouped(p.magnitudes)),
-    ("odd factors, distinct", lambda p: grouped(p.constants)),
-    ("signed-digit adders", lambda p: grouped(p.signed_digit_adders)),
+    ("odd factors, distinct", lambda p: _if_fixed(p.constants)),
+    ("signed-digit adders", lambda p: _if_fixed(p.signed_digit_adders)),
     ("coefficient bits", lambda p: grouped(p.constant_bits)),
     (
         "line buffer",

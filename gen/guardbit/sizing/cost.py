@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 
 from guardbit.model.cost import Cost, PassCost
-from guardbit.model.filter import Filter, Pass, Term
+from guardbit.model.filter import Filter, Pass, TapSet, Term
 from guardbit.sizing.passes import ACCUMULATOR, FIRST_ACCUMULATOR
 
 
@@ -28,9 +28,11 @@ def signed_digits(value: int) -> int:
 
 
 def _pass_cost(name: str, p: Pass, channels: int) -> PassCost:
+    if p.kernel.registers is not None:
+        return _loadable_cost(name, p, p.kernel.registers, channels)
     terms = [term for term in p.kernel.terms if term.integer]
     factors = {odd for term in terms if (odd := _odd(term.integer)) > 1}
-    rows = max((t.dy for t in terms), default=0) - min((t.dy for t in terms), default=0)
+    rows = _rows_between(terms)
     digits = sum(signed_digits(term.integer) for term in terms)
     real = [term for term in terms if _odd(term.integer) > 1]
     return PassCost(
@@ -47,6 +49,33 @@ def _pass_cost(name: str, p: Pass, channels: int) -> PassCost:
         line_rows=rows,
         line_bits=rows * channels * p.source.bits,
     )
+
+
+def _loadable_cost(name: str, p: Pass, s: TapSet, channels: int) -> PassCost:
+    """Return the cost where each tap that is not held to one number needs a multiplier."""
+    terms = p.kernel.terms
+    fixed = [low for low, high in zip(s.least, s.greatest, strict=True) if low == high]
+    real = len(terms) - len(fixed) + sum(bool(tap) and _odd(tap) > 1 for tap in fixed)
+    reads = len(terms) - fixed.count(0)
+    rows = _rows_between(terms)
+    return PassCost(
+        name=name,
+        reads=reads,
+        multipliers=real,
+        shifts=reads - real,
+        adders=max(reads - 1, 0),
+        folded_multipliers=real,
+        magnitudes=len(terms) - len(fixed) + len({abs(tap) for tap in fixed if tap}),
+        constants=None,
+        signed_digit_adders=None,
+        constant_bits=reads * p.kernel.bits,
+        line_rows=rows,
+        line_bits=rows * channels * p.source.bits,
+    )
+
+
+def _rows_between(terms: Sequence[Term]) -> int:
+    return max((t.dy for t in terms), default=0) - min((t.dy for t in terms), default=0)
 
 
 def _odd(integer: int) -> int:

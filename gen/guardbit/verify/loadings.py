@@ -1,5 +1,6 @@
 """Loadings of coefficient registers: legal ones at the ends and at random, and illegal ones."""
 
+import itertools
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -102,23 +103,31 @@ def illegal_loadings(f: Filter, word: tuple[int, bool]) -> tuple[Illegal, ...]:
     if s is None:
         return ()
     held = format_range(*word)
-    found = [
-        Illegal(name, cells)
-        for name, cells in _candidates(f, s)
-        if min(cells) >= held.low and max(cells) <= held.high and not _is_legal(s, cells)
-    ]
+
+    def refused(candidates: Iterator[tuple[str, Taps]]) -> list[Illegal]:
+        return [
+            Illegal(name, cells)
+            for name, cells in candidates
+            if min(cells) >= held.low and max(cells) <= held.high and not _is_legal(s, cells)
+        ]
+
+    by_cell = refused(_cell_candidates(f, s))
     # spread over all kinds, of which there are four a tap
-    step = -(-len(found) // _MOST_ILLEGAL) | 1
-    return tuple(found[::step])
+    step = -(-len(by_cell) // _MOST_ILLEGAL) | 1
+    return (*refused(_whole_candidates(f, s)), *by_cell[::step])
 
 
-def _candidates(f: Filter, s: TapSet) -> Iterator[tuple[str, Taps]]:
-    """Yield loadings that may be illegal, by name."""
-    own = nominal(f)
+def _whole_candidates(f: Filter, s: TapSet) -> Iterator[tuple[str, Taps]]:
+    """Yield loadings that may be illegal for all their taps together, by name."""
     yield "all-least", raster(s, s.least)
     yield "all-greatest", raster(s, s.greatest)
-    yield "spread", raster(s, _spread(s, own))
+    yield "spread", raster(s, _spread(s, nominal(f)))
     yield "all-zero", (0,) * s.count
+
+
+def _cell_candidates(f: Filter, s: TapSet) -> Iterator[tuple[str, Taps]]:
+    """Yield loadings that may be illegal for one tap, by name."""
+    own = nominal(f)
     for cell in sorted({*range(s.count)} - {*s.cells}):
         yield f"outside-{cell}", _put(raster(s, own), cell, 1)
     for number, cell in enumerate(s.cells):
@@ -129,10 +138,14 @@ def _candidates(f: Filter, s: TapSet) -> Iterator[tuple[str, Taps]]:
 
 
 def _spread(s: TapSet, taps: Taps) -> Taps:
-    """Return taps of the same sum, and large magnitudes: of each pair one rises, one falls."""
-    for a, b in zip(range(0, len(taps), 2), range(1, len(taps), 2), strict=False):
-        by = min(s.greatest[a] - taps[a], taps[b] - s.least[b])
-        taps = _moved(_moved(taps, a, by), b, -by)
+    """Return taps of the same sum, and large magnitudes: a few rise far, all others fall."""
+    rise = sorted(range(len(taps)), key=lambda k: taps[k] - s.greatest[k])
+    fall = sorted(range(len(taps)), key=lambda k: s.least[k] - taps[k])
+    for a, b in itertools.product(rise, fall):
+        # what has risen does not fall again
+        if rise.index(a) < rise.index(b):
+            by = min(s.greatest[a] - taps[a], taps[b] - s.least[b])
+            taps = _moved(_moved(taps, a, by), b, -by)
     return taps
 
 
