@@ -8,7 +8,7 @@ from guardbit.model.finding import Finding
 from guardbit.model.frequency import ResponseFit
 from guardbit.model.goal import GoalSearch
 from guardbit.model.sheet import Sheet
-from guardbit.model.sizing import Sizing
+from guardbit.model.sizing import Sizing, TapOrder
 
 HOLDS = 0
 FAILED = 1
@@ -28,7 +28,8 @@ class Answer:
     """`files` are to be written, by name. `fault` is a traceback: an error in guardbit.
 
     `search` and `fit`: what was searched, where the spec left something open; `pinned`: it was
-    written into the spec. `sheet`: what the sizing sheet shows.
+    written into the spec. `sheet`: what the sizing sheet shows. `orders`: what the order of the taps costs
+    each register.
     """
 
     spec: str
@@ -44,6 +45,7 @@ class Answer:
     fit: ResponseFit | None = None
     pinned: bool = False
     sheet: Sheet | None = None
+    orders: tuple[TapOrder, ...] = ()
 
 
 def overall(statuses: Iterable[int]) -> int:

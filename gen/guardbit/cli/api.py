@@ -16,7 +16,7 @@ from typing import TYPE_CHECKING
 from guardbit import __version__
 from guardbit.model.certificate import Certificate, Digest, RungResult
 from guardbit.model.finding import Finding, Place, SpecError
-from guardbit.model.sizing import Sizing
+from guardbit.model.sizing import Sizing, TapOrder
 from guardbit.model.spec import Spec
 from guardbit.report.cautions import CAUTIONS
 
@@ -93,6 +93,13 @@ def search(spec: str | Path | Spec) -> "GoalSearch | None":
     from guardbit.study.goals.search import search as searched
 
     return searched(made) if open_words(made) else None
+
+
+def orders(sizing: Sizing) -> tuple[TapOrder, ...]:
+    """Return what the order of the taps costs each register; nothing where taps are loaded."""
+    from guardbit.sizing.order import tap_orders
+
+    return tap_orders(sizing.filter)
 
 
 def sheet(sizing: Sizing, photographs: Sequence[str | Path] = ()) -> "Sheet":

@@ -41,6 +41,7 @@ class Size:
             sizing,
             search=found.search,
             fit=found.fit,
+            orders=api.orders(sizing),
         )
         if self.sheet or self.photographs or self.files:
             sheet = api.sheet(sizing, self.photographs)

@@ -37,7 +37,7 @@ def _size_text(work: Size, look: Look, answer: Answer) -> str:
     if answer.sizing is None:
         return ""
     shown = answer.sheet if work.sheet or work.photographs else None
-    parts = [sheet_text(look, shown) if shown else size_text(look, answer.sizing)]
+    parts = [sheet_text(look, shown) if shown else size_text(look, answer.sizing, answer.orders)]
     if answer.search is not None:
         parts.append(goal_text(look, answer.search))
     if answer.fit is not None:

@@ -112,7 +112,7 @@ def _bar(look: Look, register: RegisterSizing) -> Text:
     scale = next(s for s in (1, 2, 4, 8) if max(register.bits, register.bits_forbid) <= _BAR * s)
     wanted, given = -(-register.bits_forbid // scale), -(-register.bits // scale)
     full, empty, missing = "■□▲" if look.fine else "#.!"
-    enough = register.spare >= 0 and not register.is_never_safe
+    enough = _is_enough(register)
     return Text.assemble(
         (full * min(wanted, given), "green" if enough else "red"),
         empty * max(0, given - wanted),
@@ -140,13 +140,15 @@ def needed(register: RegisterSizing, bits: int, sums: Interval) -> str:
 
 def spare(register: RegisterSizing) -> str:
     """Return the spare bits of a register."""
-    return "none: sums below 0" if register.is_never_safe else signed(str(register.spare))
+    return "none: sums below 0" if register.spare is None else signed(str(register.spare))
 
 
 def _spare(_: Look, register: RegisterSizing) -> Text:
-    if register.is_never_safe:
-        return Text.assemble((spare(register), "bold red"))
-    return Text.assemble((spare(register), "" if register.spare >= 0 else "bold red"))
+    return Text.assemble((spare(register), "" if _is_enough(register) else "bold red"))
+
+
+def _is_enough(register: RegisterSizing) -> bool:
+    return register.spare is not None and register.spare >= 0
 
 
 _REGISTER_ROWS: Sequence[tuple[str, Callable[[Look, RegisterSizing], Text]]] = (

@@ -76,6 +76,7 @@ def sized(
     forbid, wrap = width(partial, accumulator.signed), width(final, accumulator.signed)
     wraps = accumulator.overflow is Overflow.WRAP
     rule_l1, rule_count = textbook_rules(register, weights or _weights(register.problem))
+    never_safe = not accumulator.signed and partial.low < 0
     return RegisterSizing(
         name=register.name,
         bits=accumulator.bits,
@@ -86,7 +87,7 @@ def sized(
         exact=exact and register.found.exact,
         bits_forbid=forbid,
         bits_wrap=wrap,
-        spare=accumulator.bits - (wrap if wraps else forbid),
+        spare=None if never_safe else accumulator.bits - (wrap if wraps else forbid),
         headroom=_headroom(accumulator, final if wraps else partial),
         rule_l1=rule_l1,
         rule_count=rule_count,
