@@ -227,3 +227,8 @@ class Plan:
     rows: tuple[Rows, ...]
     steps: tuple[Step, ...]
     taps: Cell | None = None
+
+    @property
+    def loads_what_is_tapped(self) -> bool:
+        """Return whether every row that is loaded is one that some tap reads."""
+        return len(self.tap_rows) == self.span[0]

@@ -63,7 +63,9 @@ def direct(sizing: Sizing) -> Plan:
     f = sizing.filter
     legal = Interval(f.input.low, f.input.high)
     held = container_range(f.input.container)
-    if f.outside is Outside.REJECT or contains(legal, held):
+    _, _, span, tap_rows = _reach(f)
+    judged = f.outside is Outside.REJECT and len(tap_rows) == span[0]
+    if judged or contains(legal, held):
         return _plan(sizing, None, legal)
     clamped = _plan(sizing, legal, legal)
     if f.outside is Outside.CLAMP:

@@ -2,7 +2,7 @@
 
 It reads a plan as C would carry it out and knows nothing of how the plan was made. Pixels
 are whatever the container can hold (or what loading clamps them to); under `reject` they are
-legal, since other frames are turned away before.
+legal where every row that is loaded is judged, since other frames are turned away before.
 """
 
 from collections import Counter
@@ -115,7 +115,8 @@ def room(limits: Interval, products: Interval) -> Interval:
 def _load(plan: Plan, f: Filter) -> tuple[Interval, list[Obligation]]:
     """Return what a row value can be after loading, and the obligations of loading."""
     codes = container_range(f.input.container)
-    if f.outside is Outside.REJECT:
+    if f.outside is Outside.REJECT and plan.loads_what_is_tapped:
+        # a row between the taps' rows is loaded too, but no frame is refused for its codes
         codes = Interval(f.input.low, f.input.high)
     if plan.load.clamp is not None:
         codes = clamp_to(codes, plan.load.clamp)
