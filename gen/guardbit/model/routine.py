@@ -76,7 +76,9 @@ class Routine:
     """C sources and how to call them.
 
     `word` is the container of a scratch element (bits, signed); a call needs
-    `scratch_per_column * width + scratch_fixed` of them, never fewer than 1.
+    `scratch_per_column * width + scratch_fixed` of them, never fewer than 1. `units` are numbers
+    of columns in which the code takes its steps, with another way for what is left over.
+    `foreign`: it is the user's own, and need not compile without a warning.
     `output_size` names a function (width, height, *out_width, *out_height), if there is one.
     """
 
@@ -94,6 +96,8 @@ class Routine:
     widths: tuple[int, int]
     heights: tuple[int, int]
     taps: Taps | None = None
+    units: tuple[int, ...] = ()
+    foreign: bool = False
 
 
 @dataclass(frozen=True)

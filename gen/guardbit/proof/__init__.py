@@ -1,0 +1,1 @@
+"""Proof of C code: it is executed on symbols and compared with the contract."""

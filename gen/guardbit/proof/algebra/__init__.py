@@ -1,0 +1,1 @@
+"""Symbolic integers: affine forms over pixels, and functions of one of them."""

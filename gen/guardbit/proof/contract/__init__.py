@@ -1,0 +1,1 @@
+"""The arithmetic contract, stated once more, over symbols."""

@@ -1,0 +1,1 @@
+"""The machine that C code runs on: memory, values in types, rules of C that may be broken."""

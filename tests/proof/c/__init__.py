@@ -1,0 +1,1 @@
+"""Tests of the C front end and the machine."""
