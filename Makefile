@@ -5,7 +5,7 @@ BIN := $(VENV)/bin
 JOBS ?= 2
 
 .DEFAULT_GOAL := help
-.PHONY: help demo test lint campaign errors responses widths explore coverage accept-examples clean
+.PHONY: help demo test lint campaign errors responses widths explore coverage defects prove eva accept-examples clean
 
 help: ## Show this list.
 	@grep -hE '^[a-z-]+:.*##' $(MAKEFILE_LIST) | sed 's/:.*##/:/' | awk -F': ' '{ printf "  make %-16s %s\n", $$1, $$2 }'
@@ -38,6 +38,15 @@ responses: $(BIN)/ready ## Compare the response fit with nearest and gain (a qua
 
 widths: $(BIN)/ready ## Count the bits that exact widths save against the textbook rules.
 	$(BIN)/python tests/campaign/widths.py
+
+defects: $(BIN)/ready ## Seed 2,000 defects in the C of the examples: which rungs notice, is the proof sound.
+	$(BIN)/python tests/campaign/defects.py $(CAMPAIGN)
+
+prove: $(BIN)/ready ## Prove the C of every example, thoroughly, on all four data models.
+	$(BIN)/guardbit prove examples/*.toml --thorough --jobs $(JOBS)
+
+eva: $(BIN)/ready ## Ask Frama-C's Eva for undefined behaviour in the C of every example.
+	$(BIN)/python tests/eva
 
 explore: $(BIN)/ready ## Run the property tests on new examples, many more than make test draws.
 	GUARDBIT_EXPLORE=1 $(BIN)/python -m pytest -n $(JOBS) tests/arith tests/files tests/fit tests/plan tests/reference tests/spec

@@ -251,7 +251,7 @@ def test_help(guardbit: Guardbit, command: list[str]) -> None:
 def test_help_carries_the_cautions(guardbit: Guardbit) -> None:
     said = " ".join(guardbit("--help").out.split())
     assert " ".join(CAUTIONS) in said
-    assert "prove" not in said
+    assert "bench" not in said
 
 
 def test_version(guardbit: Guardbit) -> None:

@@ -19,7 +19,7 @@ from guardbit.verify.ladder import climb
 from .handmade import DEFECTS, OVERFLOWING, PROBE, SOURCE, broken, routine, sizing
 
 COMPARED = (impulses, witnesses, frames, bands, calls)
-RUNGS = ["build", *(rung.NAME for rung in COMPARED), "requantiser", "sanitized", "error"]
+RUNGS = ["build", *(rung.NAME for rung in COMPARED), "requantiser", "sanitized", "error", "proof"]
 
 
 @pytest.fixture(scope="module")

@@ -27,6 +27,9 @@ STRICT = (
 )
 """The flags under which emitted C compiles without a warning, on gcc and clang."""
 
+LENIENT = ("-std=c99", "-w")
+"""The flags for C of the user's own, which need not be free of warnings."""
+
 _INSTALL = "apt-get install gcc (Debian), xcode-select --install (macOS), or pip install ziglang"
 
 

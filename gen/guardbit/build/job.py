@@ -46,14 +46,18 @@ def layout(routine: Routine, call: Call) -> Layout:
     """Return the buffers that a call needs. Strides are in elements."""
     _, width, channels = call.frame.shape
     rows, columns = call.shape
-    dst_stride = columns * channels + call.dst_gap
+    # without an argument for the stride rows follow one another
+    roles = routine.frame.roles
+    src_gap = call.src_gap if Role.SRC_STRIDE in roles else 0
+    dst_gap = call.dst_gap if Role.DST_STRIDE in roles else 0
+    dst_stride = columns * channels + dst_gap
     cells = (rows - 1) * dst_stride + columns * channels if rows and columns else 0
     length, word = 0, 0
     if routine.word is not None:
         length = max(1, routine.scratch_per_column * width + routine.scratch_fixed)
         word = routine.word[0] // 8
     size = DTYPES[routine.destination].itemsize
-    src_stride = width * channels + call.src_gap
+    src_stride = width * channels + src_gap
     return Layout(src_stride, dst_stride, cells * size, length, length * word)
 
 

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from guardbit.build.compilation import Unit, compile_units, link, write_sources
-from guardbit.build.compiler import STRICT, Compiler
+from guardbit.build.compiler import LENIENT, STRICT, Compiler
 from guardbit.build.job import encode
 from guardbit.build.processes import Ended, death, run_probe, run_tasks, watch
 from guardbit.build.texts import kinds, labelled, probing, prototypes
@@ -34,20 +34,21 @@ class Library:
         """Return an outcome per task, in order; all of them share one child process."""
         numbers = {id(routine): i for i, routine in enumerate(self.routines)}
         numbered = [(numbers[id(routine)], routine, call) for routine, call in tasks]
-        return run_tasks(numbered, lambda job: self._launch(job, None))
+        return run_tasks(numbered, lambda job: self.launch(job, None))
 
     def probe(self, probe: Probe, arguments: Codes) -> Probed:
         """Return the probe's result for each argument."""
-        return run_probe(arguments, lambda job: self._launch(job, probe.function))
+        return run_probe(arguments, lambda job: self.launch(job, probe.function))
 
     def check(self) -> None:
         """Load the library and look up every function. Raises BuildError, MachineError."""
-        ended = self._launch(encode([]), None)
+        ended = self.launch(encode([]), None)
         if ended.status != 0:
             death(ended)
             raise MachineError(finding("child-failed", reason=ended.words.strip()[-300:]))
 
-    def _launch(self, job: bytes, probe: str | None) -> Ended:
+    def launch(self, job: bytes, probe: str | None = None) -> Ended:
+        """Return how the child ended that ran a job file, or gave arguments to a probe."""
         with tempfile.TemporaryDirectory(dir=self.path.parent) as name:
             folder = Path(name)
             (folder / "input").write_bytes(job)
@@ -113,7 +114,8 @@ def compile_library(
     compiler's messages; a warning of the strict flags is one, a function that is not there too.
     """
     sources = {source.name: source for routine in routines for source in routine.sources}
-    made = units(folder, tuple(sources.values()), probes, (*STRICT, "-O2", "-fPIC"))
+    flags = LENIENT if any(routine.foreign for routine in routines) else STRICT
+    made = units(folder, tuple(sources.values()), probes, (*flags, "-O2", "-fPIC"))
     compile_units(compiler, made)
     target = folder / "guardbit.so"
     link(compiler, [unit.object for unit in made], target, _SHARED)

@@ -28,8 +28,8 @@ class Answer:
     """`files` are to be written, by name. `fault` is a traceback: an error in guardbit.
 
     `search` and `fit`: what was searched, where the spec left something open; `pinned`: it was
-    written into the spec. `sheet`: what the sizing sheet shows. `orders`: what the order of the taps costs
-    each register.
+    written into the spec. `sheet`: what the sizing sheet shows. `orders`: what the order of
+    the taps costs each register.
     """
 
     spec: str
@@ -54,9 +54,14 @@ def overall(statuses: Iterable[int]) -> int:
     return next((status for status in _ORDER if status in present), HOLDS)
 
 
+def _is_open(rung: RungResult) -> bool:
+    """Return whether a rung could not tell, which is no fault of the C."""
+    return rung.undecided > 0 and not rung.findings
+
+
 def rung_status(rungs: Iterable[RungResult]) -> int:
     """Return 1 if a rung failed, else 3 if one could not run, else 0."""
     rungs = tuple(rungs)
-    if not rungs or any(rung.ran and not rung.holds for rung in rungs):
+    if not rungs or any(rung.ran and not rung.holds and not _is_open(rung) for rung in rungs):
         return FAILED
     return HOLDS if all(rung.ran for rung in rungs) else MISSING

@@ -23,8 +23,12 @@ from guardbit.report.cautions import CAUTIONS
 if TYPE_CHECKING:
     from guardbit.model.goal import GoalSearch
     from guardbit.model.plan import Plan
-    from guardbit.model.routine import Emission
+    from guardbit.model.routine import Codes, Emission, Routine
     from guardbit.model.sheet import Sheet
+    from guardbit.verify.bench import Options
+
+    Against = tuple[str | Path, str, Sequence[str]]
+    Frame = list[list[list[int]]]
 
 TOOL = f"guardbit {__version__}"
 
@@ -136,11 +140,24 @@ def emit(spec: str | Path | Spec) -> Product:
     return _product(made, sizing, *_emitted(sizing))
 
 
+@dataclass(frozen=True)
+class Checks:
+    """What `verify` may be asked for besides.
+
+    `defects`: how many faults to seed in the C, to measure the rungs. `against`: the user's own C
+    to check instead of the emitted: a file, a function in it and what its arguments are.
+    """
+
+    defects: int | None = None
+    against: "Against | None" = None
+
+
 def verify(
     spec: str | Path | Spec,
     compiler: str | None = None,
     photograph: str | Path | None = None,
     keep: str | Path | None = None,
+    more: Checks | None = None,
 ) -> Product:
     """Return what `emit` does, with the evidence of every rung in the certificate.
 
@@ -148,11 +165,76 @@ def verify(
     is run as well; `keep` a folder for what reproduces a mismatch. A check that failed raises
     nothing: its findings are in the rungs. Raises SpecError, MachineError.
     """
-    made = _spec(spec)
+    from guardbit.files.images import read_image
+    from guardbit.verify.bench import Options
+
+    made, more = _spec(spec), more or Checks()
     sizing = _allowed(made)
     plan, emission = _emitted(sizing)
-    rungs = _climbed(sizing, emission, compiler, photograph, keep)
+    if more.against is not None:
+        emission = replace(emission, routine=_foreign(sizing, more.against), probes=())
+    options = Options(
+        photograph=read_image(Path(photograph)) if photograph is not None else None,
+        folder=Path(keep) if keep is not None else None,
+        defects=more.defects,
+    )
+    rungs = _climbed(sizing, emission, compiler, options)
     return _product(made, sizing, plan, emission, rungs)
+
+
+def subject(spec: str | Path | Spec, against: "Against | None" = None) -> "tuple[Sizing, Routine]":
+    """Return the sizing, and the routine that is to be checked: the emitted, or the user's own.
+
+    `against` is a C file, a function in it and what its arguments are. Raises SpecError.
+    """
+    sizing = _allowed(_spec(spec))
+    if against is None:
+        return sizing, _emitted(sizing)[1].routine
+    return sizing, _foreign(sizing, against)
+
+
+def filtered(
+    spec: str | Path | Spec,
+    frame: "Frame",
+    against: "Against | None" = None,
+    taps: Sequence[int] | None = None,
+) -> "Frame | str":
+    """Return what the compiled C makes of a frame, as rows of pixels of channels.
+
+    A sanitizer's words, or what else went wrong, come back as text. Raises SpecError,
+    MachineError.
+    """
+    import tempfile
+
+    from guardbit.build.compiler import find_compiler
+    from guardbit.build.sanitized import sanitized_runner
+    from guardbit.model.routine import Call
+    from guardbit.reference.run import output_positions
+
+    sizing, routine = subject(spec, against)
+    codes = _codes(frame)
+    rows, columns = output_positions(sizing.filter, *codes.shape[:2])
+    call = Call(codes, (len(rows), len(columns)), taps=None if taps is None else tuple(taps))
+    with tempfile.TemporaryDirectory(prefix="guardbit-") as folder:
+        runner = sanitized_runner(find_compiler(), routine, (), Path(folder))
+        (outcome,) = runner.run([call])
+    if outcome.harm is not None or outcome.output is None:
+        return f"{outcome.harm or 'refused'}: {outcome.statuses} {outcome.detail}".strip()
+    made: Frame = outcome.output.tolist()
+    return made
+
+
+def expected(spec: str | Path | Spec, frame: "Frame", taps: Sequence[int] | None = None) -> "Frame":
+    """Return what the contract makes of a frame, as rows of pixels of channels."""
+    from guardbit.model.filter import holding, registers_of
+    from guardbit.reference.run import respond
+
+    f = _allowed(_spec(spec)).filter
+    s = registers_of(f)
+    if s is not None and taps is not None:
+        f = holding(f, tuple(taps[cell] for cell in s.cells))
+    made: Frame = respond(f, _codes(frame)).output.tolist()
+    return made
 
 
 def write(product: Product, folder: str | Path, force: bool = False) -> tuple[Digest, ...]:
@@ -191,22 +273,26 @@ def _emitted(sizing: Sizing) -> "tuple[Plan, Emission]":
     return plan, texts(sizing, plan, selfcheck(sizing))
 
 
+def _foreign(sizing: Sizing, against: "Against") -> "Routine":
+    from guardbit.emit.adapter import foreign_routine
+    from guardbit.files.sources import read_sources
+
+    file, function, arguments = against
+    return foreign_routine(sizing.filter, read_sources(Path(file)), function, arguments)
+
+
+def _codes(frame: "Frame") -> "Codes":
+    import numpy as np
+
+    return np.array(frame, np.int64)
+
+
 def _climbed(
-    sizing: Sizing,
-    emission: "Emission",
-    command: str | None,
-    photograph: str | Path | None,
-    keep: str | Path | None,
+    sizing: Sizing, emission: "Emission", command: str | None, options: "Options"
 ) -> tuple[RungResult, ...]:
     from guardbit.build.compiler import find_compiler
-    from guardbit.files.images import read_image
-    from guardbit.verify.bench import Options
     from guardbit.verify.ladder import climb
 
-    options = Options(
-        photograph=read_image(Path(photograph)) if photograph is not None else None,
-        folder=Path(keep) if keep is not None else None,
-    )
     found = find_compiler({**os.environ, "CC": command} if command else None)
     return climb(sizing, emission.routine, emission.probes, found, options)
 

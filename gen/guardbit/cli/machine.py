@@ -9,6 +9,9 @@
        "pinned": whether size wrote that into the spec,
        "folder": where files were written, or "", "written": [{"name", "sha256"}]}]}
 
+`prove` answers {"spec", "status", "findings", "proof": its rung, "cases": [{"model", "width",
+"height", "codes", "bands", "verdict", "reason", "outputs"}], "folder", "written"} for each spec.
+
 Canonical as the certificate is: sorted keys, ASCII, integers beyond 2^53 and fractions as
 strings, no floats. `init` answers {"file"}, `explain` {"topics": [{"name", "text"}]}, instead
 of "specs".

@@ -16,13 +16,14 @@ import click
 
 from guardbit import __version__
 from guardbit.cli.answer import ENDED, FAULT, HOLDS, INTERRUPTED, MISSING, PIPE_CLOSED, WRONG
-from guardbit.cli.ranges import Callback, choices, numbers
+from guardbit.cli.ranges import DEFECTS, Callback, against, choices, defects, numbers
 from guardbit.model.enums import FitRule, Rounding
 from guardbit.report.cautions import CAUTIONS
 
 F = TypeVar("F", bound=Callable[..., Any])
 Work = Callable[[], int]
 
+MODELS = ("IP16", "ILP32", "LP64", "LLP64")
 _EXIT = (
     "Exit status: 0 all holds, 1 a check failed, 2 a spec or the call is wrong,"
     " 3 something is missing on this machine, 70 a fault in guardbit."
@@ -57,6 +58,17 @@ def _json(function: F) -> F:
 
 def _axis(option: str, read: Callback, said: str) -> Callable[[F], F]:
     return click.option(option, callback=read, metavar="VALUES", help=said)
+
+
+def _own(function: F) -> F:
+    file = click.option("--against", metavar="FILE", help="Check this C instead of the emitted.")
+    name = click.option("--function", metavar="NAME", help="The function in it.")
+    roles = click.option(
+        "--arguments",
+        metavar="ROLES",
+        help="Its arguments, in order: src, src_stride, dst, dst_stride, width, height, a number.",
+    )
+    return file(name(roles(function)))
 
 
 _force = click.option("--force", is_flag=True, help="Overwrite files even if they were edited.")
@@ -126,21 +138,63 @@ def emit(specs: tuple[str, ...], jobs: int | None, json: bool, output: str, forc
 @click.option("--cc", metavar="COMMAND", help="The C compiler (default: $CC, cc, gcc, clang).")
 @click.option("--photo", metavar="IMAGE", help="A photograph to run as well (PNG, PGM).")
 @click.option("--keep", metavar="FOLDER", help="Where to leave what reproduces a mismatch.")
+@click.option(
+    "--seed-defects",
+    is_flag=False,
+    flag_value=DEFECTS,
+    callback=defects,
+    metavar="[N]",
+    help=f"Seed N faults in the C ({DEFECTS}), after SPEC: how many does each rung notice?",
+)
+@_own
 def verify(
     specs: tuple[str, ...],
     jobs: int | None,
     json: bool,
     output: str | None,
     force: bool,
-    **ladder: str | None,
+    **ladder: Any,  # noqa: ANN401
 ) -> Work:
     """Compile the C and check it, rung by rung, to the last bit."""
     from guardbit.cli.many import Call
     from guardbit.cli.specs import run_verify
     from guardbit.cli.tasks import Verify
 
-    work = Verify(ladder["cc"], ladder["photo"], ladder["keep"])
+    own = against(ladder["against"], ladder["function"], ladder["arguments"])
+    work = Verify(ladder["cc"], ladder["photo"], ladder["keep"], ladder["seed_defects"], own)
     return partial(run_verify, Call(specs, jobs, json), output, force, work)
+
+
+@command.command()
+@_many
+@click.option(
+    "--model",
+    type=click.Choice(["all", *MODELS]),
+    default="all",
+    metavar="MODEL",
+    help=f"Widths of C's types: {', '.join(MODELS)} (default: all of them).",
+)
+@click.option("--thorough", is_flag=True, help="More sizes, and the largest legal ones.")
+@click.option("--relaxed", is_flag=True, help="List what C leaves to the implementation.")
+@_own
+@click.option("--output", "-o", metavar="FOLDER", help="Where a counterexample's test goes.")
+def prove(specs: tuple[str, ...], jobs: int | None, json: bool, **given: Any) -> Work:  # noqa: ANN401
+    """Prove that the C equals the spec for every possible frame of a size.
+
+    The C is executed on symbols instead of codes, at every size up to twice the taps' reach.
+    """
+    from guardbit.cli.proving import Options, run_prove
+
+    options = Options(
+        models=MODELS if given["model"] == "all" else (given["model"],),
+        thorough=given["thorough"],
+        relaxed=given["relaxed"],
+        against=against(given["against"], given["function"], given["arguments"]),
+        folder=given["output"],
+        jobs=jobs,
+        json=json,
+    )
+    return partial(run_prove, specs, options)
 
 
 @command.command()

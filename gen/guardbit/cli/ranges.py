@@ -9,6 +9,9 @@ import click
 
 from guardbit.model.spec import Auto
 
+DEFECTS = "120"
+"""How many faults are seeded where the number is left out."""
+
 Callback: TypeAlias = Callable[[click.Context, click.Parameter, str | None], tuple[Any, ...]]
 
 _PART = re.compile(r"(-?[0-9]{1,3})(?:\.\.(-?[0-9]{1,3}))?")
@@ -27,6 +30,16 @@ def numbers(low: int, high: int, *, auto: bool = False) -> Callback:
         return tuple(dict.fromkeys(found))
 
     return read
+
+
+def defects(_: click.Context, __: click.Parameter, value: str | None) -> int | None:
+    """Return how many faults to seed; None: none. Raises click.BadParameter."""
+    if value is None:
+        return None
+    if not re.fullmatch(r"[0-9]{1,5}", value) or int(value) == 0:
+        said = f'"{value[:40]}" is no number of faults. With the usual number name the spec first: '
+        raise click.BadParameter(f"{said}guardbit verify SPEC --seed-defects")
+    return int(value)
 
 
 def _numbers(part: str, low: int, high: int, auto: bool) -> Iterator[int | Auto]:
@@ -57,3 +70,18 @@ def choices(*words: StrEnum) -> Callback:
         return tuple(dict.fromkeys(by_name[part] for part in parts))
 
     return read
+
+
+def against(
+    file: str | None, function: str | None, arguments: str | None
+) -> tuple[str, str, tuple[str, ...]] | None:
+    """Return the user's own C that is to be checked; None: what is emitted.
+
+    Raises click.UsageError if only a part of it is named.
+    """
+    given = (file, function, arguments)
+    if given == (None, None, None):
+        return None
+    if file is None or function is None or arguments is None:
+        raise click.UsageError("--against, --function and --arguments belong together.")
+    return file, function, tuple(part.strip() for part in arguments.split(","))

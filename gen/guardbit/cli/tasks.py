@@ -61,15 +61,22 @@ def emit(spec: str) -> Answer:
 
 @dataclass(frozen=True)
 class Verify:
-    """The ladder for a spec. `compiler` is a command, `photograph` an image file's name."""
+    """The ladder for a spec. `compiler` is a command, `photograph` an image file's name.
+
+    `defects` is how many faults are seeded in the C; None: that is left out. `against` is the
+    user's own C: a file, a function in it and what its arguments are.
+    """
 
     compiler: str | None = None
     photograph: str | None = None
     keep: str | None = None
+    defects: int | None = None
+    against: tuple[str, str, tuple[str, ...]] | None = None
 
     def __call__(self, spec: str) -> Answer:
         """Return the answer that holds every rung's result."""
-        product = api.verify(spec, self.compiler, self.photograph, self.keep)
+        more = api.Checks(self.defects, self.against)
+        product = api.verify(spec, self.compiler, self.photograph, self.keep, more)
         rungs = product.certificate.rungs
         findings = tuple(f for rung in rungs for f in rung.findings)
         return replace(_made(spec, product), status=rung_status(rungs), findings=findings)

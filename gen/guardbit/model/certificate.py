@@ -28,7 +28,8 @@ class RungResult:
     """One rung of the ladder: what it ran, what that covered, and what it did not.
 
     A rung that could not run has `ran` False, with the reason in `not_covered`. It holds
-    when it ran, ran at least one case, and has no findings.
+    when it ran, ran at least one case, and has no findings. `undecided` counts cases that were
+    neither shown nor refuted: it then does not hold, and nothing is known to be wrong either.
     """
 
     name: str
@@ -38,11 +39,12 @@ class RungResult:
     not_covered: tuple[str, ...]
     figures: tuple[Figure, ...]
     findings: tuple[Finding, ...]
+    undecided: int = 0
 
     @property
     def holds(self) -> bool:
         """Return whether the rung ran, on something, and found nothing."""
-        return self.ran and self.cases > 0 and not self.findings
+        return self.ran and self.cases > 0 and not self.findings and not self.undecided
 
 
 @dataclass(frozen=True)

@@ -64,9 +64,9 @@ class RegisterSizing:
     frame; otherwise they are bounds. `bits_forbid` is the least width no partial sum leaves,
     `bits_wrap` the least width that holds every final value. `headroom` is the ratio of the
     width's limit to the worst case, the lesser of both ends. An unsigned register holds no
-    negative sum at any width: then these widths are a signed one's and `spare` is None. `held_exact` says that
-    both ends of `held` are attained: by `held_witnesses`, or where there is none for an end,
-    by the frame of the final's.
+    negative sum at any width: then these widths are a signed one's and `spare` is None.
+    `held_exact` says that both ends of `held` are attained: by `held_witnesses`, or where there
+    is none for an end, by the frame of the final's.
     """
 
     name: str

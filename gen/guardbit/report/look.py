@@ -26,13 +26,19 @@ class Look:
     fine: bool = False
 
     def sign(self, state: str) -> str:
-        """Return the sign of "holds", "fails", "not run" or "note"."""
+        """Return the sign of "holds", "fails", "not run", "open" or "note"."""
         return (_FINE if self.fine else _PLAIN)[state]
 
 
-_FINE = {"holds": "◆", "fails": "✖", "not run": "◇", "note": "→"}
-_PLAIN = {"holds": "[+]", "fails": "[X]", "not run": "[ ]", "note": "->"}
-STYLES = {"holds": "green", "fails": "bold red", "not run": "yellow", "note": "cyan"}
+_FINE = {"holds": "◆", "fails": "✖", "not run": "◇", "open": "◇", "note": "→"}
+_PLAIN = {"holds": "[+]", "fails": "[X]", "not run": "[ ]", "open": "[?]", "note": "->"}
+STYLES = {
+    "holds": "green",
+    "fails": "bold red",
+    "not run": "yellow",
+    "open": "yellow",
+    "note": "cyan",
+}
 
 
 def look_of(stream: TextIO, environment: Mapping[str, str], columns: int) -> Look:

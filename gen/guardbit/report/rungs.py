@@ -13,13 +13,15 @@ from guardbit.report.heads import head, words
 from guardbit.report.look import STYLES, Look, drawn
 from guardbit.report.text import grouped, plural
 
-_STATES = {"holds": "holds", "fails": "FAILS", "not run": "not run"}
+_STATES = {"holds": "holds", "fails": "FAILS", "not run": "not run", "open": "open"}
 
 
 def state(rung: RungResult) -> str:
-    """Return "holds", "fails" or "not run". A rung that ran no case fails."""
+    """Return "holds", "fails", "not run" or "open". A rung that ran no case fails."""
     if not rung.ran:
         return "not run"
+    if rung.undecided and not rung.findings:
+        return "open"
     return "holds" if rung.holds else "fails"
 
 
@@ -29,7 +31,7 @@ def verify_text(look: Look, filter_: Filter, error: ErrorBound, rungs: Sequence[
         look,
         *head(look, filter_),
         Text(),
-        _ladder(look, rungs),
+        ladder(look, rungs),
         Text(),
         _figures(look, error, rungs),
         Text(),
@@ -37,7 +39,8 @@ def verify_text(look: Look, filter_: Filter, error: ErrorBound, rungs: Sequence[
     )
 
 
-def _ladder(look: Look, rungs: Sequence[RungResult]) -> Table:
+def ladder(look: Look, rungs: Sequence[RungResult]) -> Table:
+    """Return a row for each rung, with what it covered and what it did not."""
     table = Table.grid(padding=(0, 2))
     table.add_column(no_wrap=True)
     table.add_column(no_wrap=True)
@@ -109,7 +112,7 @@ def _value(figure: Figure) -> str:
 
 def _verdict(look: Look, rungs: Sequence[RungResult]) -> Text:
     states = [state(rung) for rung in rungs]
-    kind = next((k for k in ("fails", "not run") if k in states), "holds")
+    kind = next((k for k in ("fails", "not run", "open") if k in states), "holds")
     if not rungs:
         kind = "not run"
     count = len(states) if kind == "holds" else states.count(kind)
@@ -121,4 +124,5 @@ _SUMMARY = {
     "holds": "holds: {n}, each to the last bit",
     "fails": "FAILS: {n}",
     "not run": "incomplete: {n} not run, the others hold",
+    "open": "{n} open: neither shown nor refuted; the others hold",
 }

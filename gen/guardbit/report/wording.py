@@ -7,8 +7,10 @@ the finding's values.
 from guardbit.model.finding import Finding, Place
 from guardbit.report import (
     words_cli,
+    words_defects,
     words_fit,
     words_goal,
+    words_proof,
     words_registers,
     words_sizing,
     words_spec,
@@ -18,8 +20,10 @@ from guardbit.report import (
 
 WORDS: dict[str, tuple[str, str]] = {
     **words_cli.WORDS,
+    **words_defects.WORDS,
     **words_fit.WORDS,
     **words_goal.WORDS,
+    **words_proof.WORDS,
     **words_registers.WORDS,
     **words_sizing.WORDS,
     **words_spec.WORDS,

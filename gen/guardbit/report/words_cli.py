@@ -1,6 +1,26 @@
 """Sentences about calls, certificates, and faults of guardbit itself: (reason, remedy)."""
 
 WORDS: dict[str, tuple[str, str]] = {
+    "against-folder": (
+        "{name} is included from another folder",
+        "Put the headers beside the C file",
+    ),
+    "against-unread": (
+        "{name} cannot be read ({reason})",
+        "Name a C file; what it includes by name has to lie beside it",
+    ),
+    "against-function": (
+        '"{got}" is no name of a C function',
+        "Name the function that filters a frame with --function",
+    ),
+    "against-argument": (
+        '"{got}" is not what an argument can be',
+        "Name each argument's role ({known}), or give a whole number",
+    ),
+    "against-arguments": (
+        "{got}: src and dst have to be among the arguments, and none of them twice",
+        "Name the roles of all arguments of the function, in its order",
+    ),
     "same-name": (
         "The filter is called {name}, as the one in {other} is, and both would write the "
         "same files.",

@@ -20,6 +20,9 @@ _FEW = ("flat-high", "ramp", "checker", "corner-low")
 
 _PHOTOGRAPH = 256
 
+_LONG = 300
+"""A length that 8 bits do not count."""
+
 
 @dataclass(frozen=True, eq=False)
 class Stimulus:
@@ -48,7 +51,7 @@ def stimuli(filter: Filter, photograph: Codes | None = None) -> tuple[Stimulus, 
 
     The same for the same filter: the random generator is seeded.
     """
-    made = [*_structures(filter), *_randoms(filter)]
+    made = [*_structures(filter), *_randoms(filter), *_long(filter)]
     if photograph is not None:
         made.append(scaled_photograph(filter, photograph))
     return tuple(made)
@@ -171,6 +174,18 @@ def _randoms(filter: Filter) -> Iterator[Stimulus]:
         yield Stimulus(f"{kind}-{height}x{width}-{number}", Purpose.RANDOM, frame)
     if filter.outside is Outside.CLAMP:
         yield from _beyond(filter, rng)
+
+
+def _long(filter: Filter) -> Iterator[Stimulus]:
+    """Yield a wide and a high frame, where such are legal and small enough."""
+    rng = np.random.default_rng(_SEED)
+    heights, widths = axis_lengths(filter, 0), axis_lengths(filter, 1)
+    (long_height,), (long_width,) = (_legal(axis_of(filter, axis), [_LONG]) for axis in (0, 1))
+    middle = heights[len(heights) // 2], widths[len(widths) // 2]
+    for height, width in ((middle[0], long_width), (long_height, middle[1])):
+        if height * width <= _MANY_PIXELS:
+            frame = random_frame(filter, (height, width), rng)
+            yield Stimulus(f"long-{height}x{width}", Purpose.RANDOM, frame)
 
 
 def _beyond(filter: Filter, rng: np.random.Generator) -> Iterator[Stimulus]:

@@ -23,12 +23,14 @@ class Options:
     """`photograph` is (height, width) or (height, width, channels) of integers.
 
     `folder` receives a reproducer per mismatch; None: none are kept. `seconds` is the
-    processor time after which a call on a small frame counts as a hang.
+    processor time after which a call on a small frame counts as a hang. `defects` is how many
+    faults are seeded in the C at most; None: none, and there is no such rung.
     """
 
     photograph: Codes | None = None
     folder: Path | None = None
     seconds: float = 2.0
+    defects: int | None = None
 
 
 @dataclass(frozen=True, eq=False)

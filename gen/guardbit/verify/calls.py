@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
+from guardbit.arith.borders import positions
 from guardbit.arith.words import container_range
 from guardbit.model.certificate import Figure, RungResult
 from guardbit.model.enums import Outside
@@ -29,6 +30,7 @@ def cases(bench: Bench) -> list[Case]:
     wrong: list[Case] = []
     if bench.routine.frame.status:
         wrong = [*_wrong_arguments(bench, vector), *_wrong_taps(bench, vector)]
+        wrong += _largest(bench, vector)
     return wrong + list(_codes(bench, vector))
 
 
@@ -58,6 +60,29 @@ def _wrong_arguments(bench: Bench, vector: Vector) -> Iterator[Case]:
             faults = ((Role.FROM, first), (Role.TO, last))
             call = Call(vector.frame, shape, ((0, 0),), faults=faults)
             yield Case(f"band-rows-{first}-{last}", call, Status.BAD_SIZE, None)
+
+
+def _largest(bench: Bench, vector: Vector) -> Iterator[Case]:
+    """Yield calls for no row of the largest legal images: accepted, without their pixels."""
+    f, routine = bench.filter, bench.routine
+    if routine.band is None:
+        return
+    height, width, channels = vector.frame.shape
+    for w, h in ((routine.widths[1], height), (width, routine.heights[1])):
+        size = tuple(
+            len(positions(axis, f.geometry.extent, n))
+            for axis, n in ((f.geometry.rows, h), (f.geometry.columns, w))
+        )
+        arguments = {
+            Role.WIDTH: w,
+            Role.HEIGHT: h,
+            Role.SRC_STRIDE: w * channels,
+            Role.DST_STRIDE: size[1] * channels,
+            Role.SCRATCH_LEN: max(1, routine.scratch_per_column * w + routine.scratch_fixed),
+        }
+        given = tuple(pair for pair in arguments.items() if pair[0] in routine.band.roles)
+        call = Call(vector.frame, vector.response.output.shape[:2], ((0, 0),), faults=given)
+        yield Case(f"largest-{w}x{h}", call, Status.OK, None, size=(size[0], size[1]))
 
 
 def _wrong_taps(bench: Bench, vector: Vector) -> Iterator[Case]:
@@ -145,6 +170,7 @@ def result(bench: Bench, trials: Trials) -> RungResult:
     found, failed, left = findings(bench, trials)
     refused = sum(case.status is not Status.OK for case in trials.cases)
     codes = sum(_is_of_code(case) for case in trials.cases)
+    largest = sum(case.name.startswith("largest-") for case in trials.cases)
     notes = [] if codes else ["the input's type holds no code outside the range"]
     if any(not case.specified and _is_of_code(case) for case in trials.cases):
         notes.append("outputs for codes outside the range are unspecified: looked at for harm only")
@@ -159,6 +185,7 @@ def result(bench: Bench, trials: Trials) -> RungResult:
                 [f"{refused} calls that must be refused, with the destination untouched"]
                 * (refused > 0)
             ),
+            *([f"{largest} calls for no row of the largest legal images"] * (largest > 0)),
             *(
                 [f"{codes} frames with codes outside the range ({bench.filter.outside})"]
                 * (codes > 0)

@@ -16,17 +16,26 @@ from guardbit.model.certificate import Figure, RungResult
 from guardbit.model.finding import GuardbitError, MachineError
 from guardbit.model.routine import Probe, Routine
 from guardbit.model.sizing import Sizing
-from guardbit.verify import bands, calls, error, frames, impulses, requantiser, sanitized
+from guardbit.verify import bands, calls, error, frames, impulses, proof, requantiser, sanitized
 from guardbit.verify import witnesses as witnessing
 from guardbit.verify.bench import Bench, Options, prepare, run
 from guardbit.verify.cases import Case, work
+from guardbit.verify.defects import rung as seeded
 from guardbit.verify.second import load_scipy
 
 __all__ = ["Options", "climb"]
 
 BUILD = "build"
 _COMPARED = (impulses, witnessing, frames, bands, calls)
-_AFTER = (*(rung.NAME for rung in _COMPARED), requantiser.NAME, sanitized.NAME, error.NAME)
+_AFTER = (
+    *(rung.NAME for rung in _COMPARED),
+    requantiser.NAME,
+    sanitized.NAME,
+    error.NAME,
+    proof.NAME,
+)
+
+_OFFERED = (bands.NAME, calls.NAME, requantiser.NAME)
 
 _T = TypeVar("_T")
 
@@ -79,7 +88,10 @@ def climb(
         host = builds.host.result()
         if isinstance(host, GuardbitError):
             return _not_built(compiler, routine, host)
-        return _climb(pool, compiler, bench, host, builds)
+        rungs = _climb(pool, compiler, bench, host, builds)
+    if chosen.defects is None:
+        return rungs
+    return (*rungs, seeded.result(bench, compiler, chosen.defects, rungs))
 
 
 def _start(pool: ThreadPoolExecutor, order: _Order, folder: Path) -> _Builds:
@@ -138,7 +150,14 @@ def _climb(
     compared = [rung.result(bench, trials.result()) for rung, trials in running]
     tail = requantiser.result(bench, host)
     far = error.result(bench.sizing, bench.frames)
-    return (_built(compiler, bench.routine), *compared, tail, checked.result(), far)
+    shown = proof.result(bench.sizing.filter, bench.routine)
+    rungs = (_built(compiler, bench.routine), *compared, tail, checked.result(), far, shown)
+    return tuple(rung for rung in rungs if rung.ran or not _is_absent(bench.routine, rung))
+
+
+def _is_absent(routine: Routine, rung: RungResult) -> bool:
+    """Return whether a rung is about what the user's own C does not offer."""
+    return routine.foreign and rung.name in _OFFERED
 
 
 def _patience(bench: Bench, cases: Sequence[Case]) -> float:
@@ -165,11 +184,19 @@ def _built(compiler: Compiler, routine: Routine) -> RungResult:
         BUILD,
         ran=True,
         cases=len(units),
-        covered=(f"{', '.join(units)} with {compiler.label}: no warning under {' '.join(STRICT)}",),
-        not_covered=("other compilers and targets",),
+        covered=(f"{', '.join(units)} with {compiler.label}{_warnings(routine)}",),
+        not_covered=("other compilers and targets", *_missing(routine)),
         figures=(Figure("compiler", compiler.label),),
         findings=(),
     )
+
+
+def _missing(routine: Routine) -> tuple[str, ...]:
+    return ("bands, status codes, requantisers alone: it offers none",) if routine.foreign else ()
+
+
+def _warnings(routine: Routine) -> str:
+    return "" if routine.foreign else f": no warning under {' '.join(STRICT)}"
 
 
 def _not_built(
