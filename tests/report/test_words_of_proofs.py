@@ -10,7 +10,8 @@ PROOF = Path(__file__).parents[2] / "gen" / "guardbit" / "proof"
 SOURCE = "\n".join(path.read_text() for path in sorted(PROOF.rglob("*.py")))
 BROKEN = r'(?:\.broken|Difference|BrokenError|\.within)\(\s*(?:value, (?:kind|word), )?"([a-z-]+)"'
 REFUSED = (
-    r'(?:\.refused|InexpressibleError|RefusedError)\(\s*"([a-z-]+)"|\.refuse\(\s*[\w.]+, "([a-z-]+)"'
+    r'(?:\.refused|InexpressibleError|RefusedError)\(\s*"([a-z-]+)"'
+    r'|\.refuse\(\s*[\w.]+, "([a-z-]+)"'
 )
 
 
