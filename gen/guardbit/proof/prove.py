@@ -4,7 +4,7 @@ import time
 from dataclasses import dataclass, replace
 
 from guardbit.model.filter import Filter, holding, registers_of
-from guardbit.model.proof import Assumption, Case, CaseResult, Codes, Place, Verdict
+from guardbit.model.proof import Assumption, Case, CaseResult, Codes, Counterexample, Place, Verdict
 from guardbit.model.routine import Routine
 from guardbit.model.sizing import Interval
 from guardbit.proof.algebra.values import InexpressibleError, Value
@@ -80,6 +80,8 @@ class _Case:
             f.input.high if case.codes is Codes.ILLEGAL else high,
         )
         try:
+            if case.codes is Codes.BREAKPOINTS:
+                return self._at_breakpoints(run, frames, tally)
             found = self._first_difference(run, tally)
         except BrokenError as error:
             return self._broken(frames, error)
@@ -97,9 +99,16 @@ class _Case:
     def _first_difference(self, run: Run, tally: Tally) -> Difference | None:
         if self.case.codes is Codes.WRONG:
             return wrong_calls(run)
-        if self.case.codes is Codes.BREAKPOINTS:
-            return breakpoint_difference(run, tally)
         return run.first_difference(tally)
+
+    def _at_breakpoints(self, run: Run, frames: Frames, tally: Tally) -> CaseResult:
+        found = breakpoint_difference(run, tally)
+        if found is None:
+            return CaseResult(self.case, Verdict.PROVED, outputs=tally.outputs)
+        difference, frame = found
+        example = frames.example(frame, difference)
+        verdict = Verdict.REFUTED if difference.reason in _OUTPUT_REASONS else Verdict.UNKNOWN
+        return CaseResult(self.case, verdict, difference.reason, difference.place, None, example)
 
     def _pixels(self, made: Subject, low: int, high: int) -> Pixels:
         case, source = self.case, self.filter.input
@@ -117,7 +126,8 @@ class _Case:
     def _broken(self, frames: Frames, error: BrokenError) -> CaseResult:
         ends = _ends(frames, error.value)
         if self.case.codes in _FIXED:
-            return CaseResult(self.case, Verdict.BROKEN, error.reason, error.place, ends)
+            example = self._fixed_example(frames, None)
+            return CaseResult(self.case, Verdict.BROKEN, error.reason, error.place, ends, example)
         space = frames.run.subject.program.cx.space
         shown = None
         try:
@@ -134,7 +144,8 @@ class _Case:
 
     def _differs(self, frames: Frames, found: Difference) -> CaseResult:
         if self.case.codes in _FIXED:
-            return CaseResult(self.case, Verdict.REFUTED, found.reason, found.place)
+            example = self._fixed_example(frames, found)
+            return CaseResult(self.case, Verdict.REFUTED, found.reason, found.place, None, example)
         shown = None
         if found.wanted is not None and found.got is not None and found.position is not None:
             pixels = frames.run.subject.program.cx.space.difference(found.got, found.wanted)
@@ -147,6 +158,18 @@ class _Case:
         if shown is None:
             return self._unknown(found.reason, found.place)
         return self._shown(shown, None)
+
+    def _fixed_example(self, frames: Frames, found: Difference | None) -> Counterexample | None:
+        """Return the fixed frame, unless it is too large or not the frame is at fault."""
+        case = self.case
+        if case.codes is not Codes.CONCRETE or case.width * case.height > _MOST_SHOWN:
+            return None
+        frame = {}
+        for cell in frames.cells():
+            code = frames.run.pixels(*cell)
+            assert isinstance(code, int)
+            frame[cell] = code
+        return frames.example(frame, found)
 
     def _replayed(self, frames: Frames) -> Shown | None:
         for frame in frames.replays():
@@ -172,6 +195,8 @@ class _Case:
 
 # what these show was run on numbers already
 _FIXED = (Codes.CONCRETE, Codes.WRONG, Codes.BREAKPOINTS)
+
+_MOST_SHOWN = 4_096
 
 _OUTPUT_REASONS = frozenset(
     {

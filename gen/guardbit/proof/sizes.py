@@ -107,24 +107,30 @@ def sizes(f: Filter, routine: Routine, *, thorough: bool) -> list[Size]:
 
     Rows and columns fold apart from each other. So each height goes with a width in the reach
     of the taps and with one beyond it, and each width with such heights; if that is too much
-    too, one length for each way to fold does, with the least of the other axis.
+    too, one length for each way to fold does, with the least of the other axis. A size whose
+    work alone is beyond all bounds is left out.
     """
     budget = MOST_WORK if thorough else MOST_WORK_SHORT
     heights, widths = lengths(f, routine, 0), lengths(f, routine, 1)
     few = _few(f, heights, 0), _few(f, widths, 1)
-    ways = (
-        lambda: {*product(heights, widths)},
-        lambda: {*product(heights, few[1]), *product(few[0], widths)},
-        lambda: _by_class(f, heights, widths, few),
-    )
-    if len(heights) * len(widths) > _MOST_PAIRS:
-        ways = ways[1:] if len(heights) + len(widths) <= _MOST_PAIRS // 3 else ways[2:]
-    chosen: set[Size] = set()
-    for way in ways:
-        chosen = way()
-        if sum(work_of(f, size) for size in chosen) <= budget:
-            break
-    return _within(f, chosen, budget)
+    if len(heights) * len(widths) <= _MOST_PAIRS:
+        chosen = {*product(heights, widths)}
+        if _work(f, chosen) <= budget:
+            return _ordered(chosen)
+    if 3 * (len(heights) + len(widths)) <= _MOST_PAIRS:
+        chosen = {*product(heights, few[1]), *product(few[0], widths)}
+        if _work(f, chosen) <= budget:
+            return _ordered(chosen)
+    ordered = _ordered(_by_class(f, heights, widths, few))
+    return [s for s in ordered if s == ordered[0] or work_of(f, s) <= 2 * budget]
+
+
+def _work(f: Filter, chosen: Iterable[Size]) -> int:
+    return sum(work_of(f, size) for size in chosen)
+
+
+def _ordered(chosen: Iterable[Size]) -> list[Size]:
+    return sorted(chosen, key=lambda size: (size[0] * size[1], size))
 
 
 def _few(f: Filter, all_: Sequence[int], axis: int) -> list[int]:
@@ -150,12 +156,6 @@ def _classes(f: Filter, all_: Sequence[int], axis: int) -> list[int]:
     near = {mark + d for mark in marks for d in (0, 1, 2)}
     near |= {*after_last(own, reach)[:3]} if own.step > 1 else set()
     return [n for n in all_ if n in near] or list(all_[:1])
-
-
-def _within(f: Filter, chosen: Iterable[Size], budget: int) -> list[Size]:
-    """Return the sizes, smallest first, less those whose work alone is beyond all bounds."""
-    ordered = sorted(chosen, key=lambda size: (size[0] * size[1], size))
-    return [s for s in ordered if s == ordered[0] or work_of(f, s) <= 2 * budget]
 
 
 def middle(f: Filter, routine: Routine, most: int) -> Size:

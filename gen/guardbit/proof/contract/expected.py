@@ -17,13 +17,17 @@ Pixels = Callable[[int, int, int], Value]
 
 @dataclass
 class Expected:
-    """The outputs of a filter for a frame of `height` x `width` pixels."""
+    """The outputs of a filter for a frame of `height` x `width` pixels.
+
+    `stepped` chooses how wrapping is written: see `accumulated`.
+    """
 
     filter: Filter
     space: Space
     height: int
     width: int
     pixels: Pixels
+    stepped: bool = False
     _codes: dict[tuple[int, int, int], Value] = field(default_factory=dict)
     _middle: dict[tuple[int, int, int], Value] = field(default_factory=dict)
 
@@ -47,19 +51,16 @@ class Expected:
     def at(self, row: int, column: int, channel: int) -> Value:
         """Return the code of output number `row`, `column`."""
         y, x = self.rows[row], self.columns[column]
-        return self._code(len(self.filter.passes) - 1, y, x, channel)
+        return self.code(len(self.filter.passes) - 1, y, x, channel)
 
-    def total(self, row: int, column: int, channel: int) -> Value:
-        """Return what the last accumulator holds for output number `row`, `column`."""
-        last = len(self.filter.passes) - 1
-        y, x = self.rows[row], self.columns[column]
-        return self._total(last, self.filter.passes[last], y, x, channel)
-
-    def _code(self, stage: int, y: int, x: int, channel: int) -> Value:
+    def code(self, stage: int, y: int, x: int, channel: int) -> Value:
+        """Return what pass number `stage` makes at a position of the image's grid."""
         each = self.filter.passes[stage]
-        return requantised(self.space, each, self._total(stage, each, y, x, channel))
+        return requantised(self.space, each, self.total(stage, y, x, channel))
 
-    def _total(self, stage: int, each: Pass, y: int, x: int, channel: int) -> Value:
+    def total(self, stage: int, y: int, x: int, channel: int) -> Value:
+        """Return what that pass's accumulator holds at the end there."""
+        each = self.filter.passes[stage]
         return accumulated(
             self.space,
             each,
@@ -70,6 +71,7 @@ class Expected:
                 for t in each.kernel.terms
                 if t.integer
             ),
+            stepped=self.stepped,
         )
 
     def _signal(self, stage: int, each: Pass, y: int, x: int, channel: int) -> Value:
@@ -80,7 +82,7 @@ class Expected:
     def _mid(self, y: int, x: int, channel: int) -> Value:
         key = (y, x, channel)
         if key not in self._middle:
-            self._middle[key] = self._code(0, y, x, channel)
+            self._middle[key] = self.code(0, y, x, channel)
         return self._middle[key]
 
     def _read(self, y: int, x: int, channel: int) -> Value:
@@ -103,12 +105,10 @@ class Expected:
     def rows_read(self, first: int, stop: int) -> set[int]:
         """Return the source rows that output rows `first` to before `stop` read."""
         f = self.filter
-        (*others, vertical) = f.passes
-        offsets = {t.dy for each in (*others, vertical) for t in each.kernel.live}
-        if others:
-            down = {t.dy for t in others[0].kernel.live} or {0}
-            across = {t.dy for t in vertical.kernel.live} or {0}
-            offsets = {a + b for a in down for b in across}
+        offsets = {0}
+        for each in f.passes:
+            # a pass without taps reads nothing, and so does what comes before it
+            offsets = {a + b for a in offsets for b in {t.dy for t in each.kernel.live}}
         if not self.shape[1]:
             return set()
         found = {

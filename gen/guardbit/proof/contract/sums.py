@@ -9,8 +9,14 @@ from guardbit.proof.algebra.values import Value
 from guardbit.proof.contract.rounding import clamped
 
 
-def accumulated(space: Space, each: Pass, products: Iterable[Value]) -> Value:
-    """Return what the accumulator of a pass holds after the products, in this order."""
+def accumulated(
+    space: Space, each: Pass, products: Iterable[Value], *, stepped: bool = False
+) -> Value:
+    """Return what the accumulator of a pass holds after the products, in this order.
+
+    With `stepped` wrapping is written as a function of the sum, with its steps, where otherwise
+    taps would be taken modulo the register's size. Both are the same number.
+    """
     register = each.accumulator
     assert register.bits is not None
     least = -(2 ** (register.bits - 1)) if register.signed else 0
@@ -22,6 +28,9 @@ def accumulated(space: Space, each: Pass, products: Iterable[Value]) -> Value:
             total = clamped(space, total, least, greatest)
     if register.overflow is Overflow.WRAP:
         # adding modulo 2^bits at every step and once at the end is the same
+        if stepped:
+            turns = space.floor_divide(space.subtract(total, least), 2**register.bits)
+            return space.subtract(total, space.multiply(turns, 2**register.bits))
         return space.wrap(total, register.bits, register.signed)
     return total
 

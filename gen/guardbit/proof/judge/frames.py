@@ -77,14 +77,15 @@ class Frames:
         try:
             found = fixed.first_difference(Tally())
         except BrokenError as error:
-            return Shown(error.reason, error.place, self._example(frame, None))
+            return Shown(error.reason, error.place, self.example(frame, None))
         except (RefusedError, BudgetError):
             return None
         if found is None:
             return None
-        return Shown(found.reason, found.place, self._example(frame, found))
+        return Shown(found.reason, found.place, self.example(frame, found))
 
-    def _example(self, frame: Frame, found: Difference | None) -> Counterexample:
+    def example(self, frame: Frame, found: Difference | None) -> Counterexample:
+        """Return a frame as a counterexample, with the output that differs."""
         case, channels = self.run.case, self.run.filter.geometry.channels
         rows = tuple(
             tuple(tuple(frame[y, x, c] for c in range(channels)) for x in range(case.width))
